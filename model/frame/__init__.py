@@ -1,0 +1,1 @@
+"""What is built: an arrangement, the skeleton its variants share, and the variants themselves."""
