@@ -51,10 +51,11 @@ def answers(batch: Batch, threads: int | None = None) -> Answers:
     solution = solve(
         batch, twist_and_bending(batch), gauge(batch.skeleton), energy_case=TWIST, threads=threads
     )
-    return _answers(batch, solution)
+    return answers_of(batch, solution)
 
 
-def _answers(batch: Batch, solution: Solution) -> Answers:
+def answers_of(batch: Batch, solution: Solution) -> Answers:
+    """Read the result columns off a solution that holds the twist energies."""
     energy = solution.energy
     assert energy is not None
     length = np.where(batch.present, batch.lengths(), 0.0)
