@@ -194,6 +194,103 @@ def energy_of_forces(length: Array, rigidity: Array, ends: Array, forces: Array)
     return np.stack(np.broadcast_arrays(axial, bending, torsion, shear, joints), axis=-1)
 
 
+def consistent_mass(
+    xi: Array,
+    xj: Array,
+    up: Array,
+    rigidity: Array,
+    ends: Array,
+    line_mass: Array,
+    rotary: Array | bool = True,
+) -> Array:
+    """Consistent mass matrix of members in vehicle axes.
+
+    Parameters
+    ----------
+    line_mass : (...)
+        Mass per length [kg/m]; the second moments of mass follow from it, EIy/EA and EIz/EA,
+        as they do for any one material.
+    rotary : (...) bool
+        Whether cross-sections that tilt in bending have inertia. Turning about the member's own
+        axis always has.
+
+    Returns
+    -------
+    (..., 12, 12) [kg, kg·m, kg·m²]
+
+    Notes
+    -----
+    The displacements between the ends are those of the loaded member itself, written in terms
+    of its end moments: cubic plus shear, with the ends as flexible or free as they are. For
+    rigid ends this is the matrix of Friedman & Kosmatka (Computers & Structures 47, 1993);
+    without shear and rotary inertia it is the classical one (Przemieniecki 1968). All products
+    have degree 6 or less, so four Gauss points integrate them exactly.
+    """
+    length = _length(xj - xi)
+    axes = member_axes(xi, xj, up)
+    modes = natural_modes(axes, length)
+    stiffness = natural_matrix(natural_stiffness(length, rigidity, ends))
+    forces = np.einsum("...ab,...bp->...ap", stiffness, modes)
+    ea, eiy, eiz = (rigidity[..., k] for k in range(3))
+    turning = line_mass / ea * np.asarray(rotary)
+    points, weights = np.polynomial.legendre.leggauss(4)
+    shape = (*np.broadcast_shapes(forces.shape[:-2], np.shape(line_mass)), 12, 12)
+    mass: Array = np.zeros(shape, dtype=forces.dtype)
+    for xi_g, weight in zip((points + 1) / 2, weights / 2, strict=True):
+        fields = _fields(float(xi_g), axes, length, rigidity, forces)
+        inertia = np.stack(
+            np.broadcast_arrays(
+                line_mass,
+                line_mass,
+                line_mass,
+                line_mass / ea * (eiy + eiz),
+                turning * eiy,
+                turning * eiz,
+            ),
+            axis=-1,
+        )
+        factor = weight * length[..., None] * inertia
+        mass = mass + np.einsum("...a,...ap,...aq->...pq", factor, fields, fields, optimize=True)
+    return mass
+
+
+def _fields(at: float, axes: Array, length: Array, rigidity: Array, forces: Array) -> Array:
+    """(..., 6, 12) ux uy uz and rotations about x y z, in local axes, at a fraction of the length.
+
+    The rigid part follows the chord; the rest is what the natural forces (..., 6, 12) do.
+    """
+    ea, eiy, eiz, gj, shear_y, shear_z = (v[..., None] for v in _last(rigidity))
+    n, t, y1, y2, z1, z2 = (forces[..., k, :] for k in range(6))
+    x, y, z = (axes[..., k, :] for k in range(3))
+    span = length[..., None]
+    none = np.zeros_like(x)
+    near, far = 1 - at, at
+    sag = (at / 3 - at**2 / 2 + at**3 / 6, -at / 6 + at**3 / 6)
+    tilt = (1 / 3 - at + at**2 / 2, -1 / 6 + at**2 / 2)
+
+    def line(axis: Array, i: float, j: float) -> Array:
+        return np.concatenate([axis * i, none, axis * j, none], axis=-1)
+
+    def mean_turn() -> Array:
+        return np.concatenate([none, x / 2, none, x / 2], axis=-1)
+
+    stretch = n * (at - 0.5) * span / ea
+    twist = t * (at - 0.5) * span / gj
+    sag_y = span**2 / eiz * (sag[0] * z1 + sag[1] * z2)
+    sag_z = span**2 / eiy * (sag[0] * y1 + sag[1] * y2)
+    tilt_y = span / eiy * (tilt[0] * y1 + tilt[1] * y2) + shear_z / span * (y1 + y2)
+    tilt_z = span / eiz * (tilt[0] * z1 + tilt[1] * z2) + shear_y / span * (z1 + z2)
+    rows = [
+        line(x, 0.5, 0.5) + stretch,
+        line(y, near, far) + sag_y,
+        line(z, near, far) - sag_z,
+        mean_turn() + twist,
+        line(z / span, 1, -1) + tilt_y,
+        line(y / span, -1, 1) + tilt_z,
+    ]
+    return np.stack(rows, axis=-2)
+
+
 def _modes_and_stiffness(
     xi: Array, xj: Array, up: Array, rigidity: Array, ends: Array
 ) -> tuple[Array, Array]:
