@@ -160,8 +160,13 @@ def member_end_forces(
     Each row is N, Vy, Vz [N], T, My, Mz [N·m], positive along the local axes; so a member in
     tension has a negative N at from and a positive one at to.
     """
-    n, t, y1, y2, z1, z2 = _last(natural_forces(xi, xj, up, rigidity, ends, ui, uj))
-    length = _length(xj - xi)
+    forces = natural_forces(xi, xj, up, rigidity, ends, ui, uj)
+    return end_forces(_length(xj - xi), forces)
+
+
+def end_forces(length: Array, forces: Array) -> Array:
+    """(..., 2, 6) the same from natural forces (..., 6)."""
+    n, t, y1, y2, z1, z2 = _last(forces)
     vy, vz = (z1 + z2) / length, -(y1 + y2) / length
     start = np.stack([-n, vy, vz, -t, y1, z1], axis=-1)
     end = np.stack([n, -vy, -vz, t, y2, z2], axis=-1)
@@ -177,10 +182,10 @@ def member_energy(
     in bending and (m1 + m2)²/(2 G As L) in shear.
     """
     forces = natural_forces(xi, xj, up, rigidity, ends, ui, uj)
-    return energy_of_forces(_length(xj - xi), rigidity, ends, forces)
+    return energies(_length(xj - xi), rigidity, ends, forces)
 
 
-def energy_of_forces(length: Array, rigidity: Array, ends: Array, forces: Array) -> Array:
+def energies(length: Array, rigidity: Array, ends: Array, forces: Array) -> Array:
     """(..., 5) the same from natural forces (..., 6)."""
     ea, eiy, eiz, gj, shear_y, shear_z = _last(rigidity)
     n, t, y1, y2, z1, z2 = _last(forces)
@@ -306,6 +311,11 @@ def natural_matrix(stiffness: Array) -> Array:
     for k, (a, b) in enumerate(places):
         matrix[..., a, b] = matrix[..., b, a] = stiffness[..., k]
     return matrix
+
+
+def lengths(xi: Array, xj: Array) -> Array:
+    """(...) distance between the ends [m]."""
+    return _length(xj - xi)
 
 
 def _length(vector: Array) -> Array:
