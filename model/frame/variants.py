@@ -169,6 +169,42 @@ class _Values:
             self.refuse(~(high <= 6), f"{path}.height_high", high, "mm", "use at most 6000")
 
 
+def position_slopes(layout: Layout) -> dict[str, tuple[float, F64]]:
+    """How the joints of a layout move with each of its dimensions.
+
+    Returns
+    -------
+    dict
+        By path: the present value, and the slope of the joint positions (joints, 3), which is
+        exact because positions are linear in each dimension. The tracks move no joint.
+    """
+    uppers = [False, *(span.upper for span in layout.spans), False]
+    present = {
+        "wheelbase": layout.wheelbase,
+        "track_front": layout.track_front,
+        "track_rear": layout.track_rear,
+    }
+    for k, station in enumerate(layout.stations):
+        names = ["width_low", "height_low"]
+        if uppers[k] or uppers[k + 1]:
+            names += ["width_high", "height_high"]
+        if station.name not in (layout.front_axle, layout.rear_axle):
+            names.append("at")
+        for name in names:
+            present[f"station.{station.name}.{name}"] = float(getattr(station, name))
+    count = len(present) + 1
+    columns: dict[str, Column] = {}
+    for row, (path, value) in enumerate(present.items(), start=1):
+        columns[path] = np.where(np.arange(count) == row, value + 1.0, value)
+    values = _Values(layout, columns, count)
+    bays = [span.bays for span in layout.spans]
+    xyz = _positions(values, scaffold(layout, bays), np.arange(count))
+    return {
+        path: (value, xyz[row] - xyz[0])
+        for row, (path, value) in enumerate(present.items(), start=1)
+    }
+
+
 def known_paths(layout: Layout) -> frozenset[str]:
     """Every path that a variant of this layout may change."""
     paths = {"wheelbase", "track_front", "track_rear"}

@@ -13,7 +13,7 @@ from model.frame.layout import Layout, Tube
 from model.frame.skeleton import F64
 from model.frame.variants import one
 from model.results.twist import PER_DEGREE, Answers, Profile, answers_of, loose, profile
-from model.solver.beam import energy_of_forces, natural_forces
+from model.solver.beam import energies, natural_forces
 from model.solver.cases import TWIST, gauge, twist_and_bending
 from model.solver.solve import solve
 
@@ -115,7 +115,7 @@ def _members(batch: Batch, moved: F64) -> tuple[F64, F64]:
     forces = natural_forces(
         batch.xyz[0, i], batch.xyz[0, j], skeleton.up, rigidity, ends, moved[i], moved[j]
     )
-    energy = energy_of_forces(batch.lengths()[0], rigidity, ends, forces)
+    energy = energies(batch.lengths()[0], rigidity, ends, forces)
     here = batch.present[0][:, None]
     return np.where(here, forces, 0.0), np.where(here, energy, 0.0)
 

@@ -17,11 +17,16 @@ Bending
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 
+from numpy.typing import NDArray
+
 from model.frame.batch import Batch
 from model.frame.skeleton import F64, I32, Skeleton
+
+Array = NDArray[Any]
 
 TWIST, BENDING = 0, 1
 """Row of each case in the loads of ``twist_and_bending``."""
@@ -63,10 +68,24 @@ def twist_and_bending(batch: Batch) -> Loads:
     dofs = _loaded(skeleton, linkage=batch.track is not None)
     place = {dof: k for k, dof in enumerate(dofs)}
     value = np.zeros((len(batch), 2, len(dofs)))
-    _add_twist(batch, place, value[:, TWIST])
+    value[:, TWIST] = _twist(skeleton, batch.xyz, batch.track, place)
     _add_bending(batch, place, value[:, BENDING])
     joint, direction = np.array(dofs, dtype=np.int32).T
     return Loads(np.ascontiguousarray(joint), np.ascontiguousarray(direction), value)
+
+
+def twist_force(skeleton: Skeleton, xyz: Array, track: Array | None) -> Array:
+    """(joints, 6) forces of the unit twist couple on one frame.
+
+    xyz : (joints, 3) [m]; track : (2,) [m] or None. Either may be complex (for derivatives).
+    """
+    dofs = _loaded(skeleton, linkage=track is not None)
+    place = {dof: k for k, dof in enumerate(dofs)}
+    values = _twist(skeleton, xyz[None], None if track is None else track[None], place)[0]
+    force = np.zeros((len(xyz), 6), dtype=values.dtype)
+    joint, direction = np.array(dofs).T
+    force[joint, direction] = values
+    return force
 
 
 def _loaded(skeleton: Skeleton, linkage: bool) -> list[tuple[int, int]]:
@@ -84,16 +103,20 @@ def _ring_of(skeleton: Skeleton, joint: int) -> I32:
     return corners
 
 
-def _add_twist(batch: Batch, place: dict[tuple[int, int], int], value: F64) -> None:
-    skeleton, xyz = batch.skeleton, batch.xyz
+def _twist(
+    skeleton: Skeleton, xyz: Array, track: Array | None, place: dict[tuple[int, int], int]
+) -> Array:
+    """(n, loaded) forces of the unit couple; complex positions give complex forces."""
+    kind = np.result_type(xyz, np.float64 if track is None else track)
+    value = np.zeros((len(xyz), len(place)), dtype=kind)
     for axle, (mounts, sign) in enumerate(((skeleton.front, 1.0), (skeleton.rear, -1.0))):
         left, right = (int(j) for j in mounts)
         base = xyz[:, right, 1] - xyz[:, left, 1]
-        arm = base if batch.track is None else batch.track[:, axle]
+        arm = base if track is None else track[:, axle]
         force = sign / arm
         value[:, place[right, _Z]] += force
         value[:, place[left, _Z]] -= force
-        if batch.track is not None:
+        if track is not None:
             low_left, low_right, high_right, high_left = (int(j) for j in _ring_of(skeleton, left))
             height = xyz[:, high_right, 2] - xyz[:, low_right, 2]
             sideways = force * (arm - base) / 2 / height
@@ -101,6 +124,7 @@ def _add_twist(batch: Batch, place: dict[tuple[int, int], int], value: F64) -> N
                 value[:, place[joint, _Y]] += sideways
             for joint in (high_left, high_right):
                 value[:, place[joint, _Y]] -= sideways
+    return value
 
 
 def _add_bending(batch: Batch, place: dict[tuple[int, int], int], value: F64) -> None:
