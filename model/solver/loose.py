@@ -214,7 +214,8 @@ def _pieces(frame: Frame, members: BoolArray) -> tuple[int, NDArray[np.int32]]:
 
 
 def _names(frame: Frame, joints: NDArray[np.intp]) -> str:
-    return "joint " + _list([frame.joints[int(j)] for j in joints])
+    word = "joint " if len(joints) == 1 else "joints "
+    return word + _list([frame.joints[int(j)] for j in joints])
 
 
 def _list(words: list[str]) -> str:

@@ -9,9 +9,9 @@ import scipy.linalg
 import scipy.sparse as sp
 from scipy.sparse.linalg import LinearOperator, eigsh, splu
 
-from model.errors import InputError
+from model.errors import InputError, LooseFrame
 from model.frame.skeleton import F64
-from model.solver import beam
+from model.solver import beam, general
 from model.solver.structure import DIRECTIONS, Frame, assemble, idle_rotations
 
 DENSE = 1500
@@ -42,7 +42,10 @@ def modes(frame: Frame, count: int) -> Modes:
     if count < 1:
         raise InputError("modes", str(count), "ask for one mode or more")
     stiffness = assemble(frame, matrices := beam.member_stiffness(*frame.geometry()))
-    idle = idle_rotations(frame, matrices)
+    try:
+        idle = general.factor(frame).idle
+    except LooseFrame:
+        idle = idle_rotations(frame, matrices)
     free = ~frame.held.ravel()
     k = (stiffness + idle.grounding())[free][:, free].tocsc()
     m = idle.quiet(mass_matrix(frame))[free][:, free].tocsc()
