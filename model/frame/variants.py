@@ -169,6 +169,49 @@ class _Values:
             self.refuse(~(high <= 6), f"{path}.height_high", high, "mm", "use at most 6000")
 
 
+def every_brace(layout: Layout) -> tuple[Batch, Scaffold]:
+    """The layout with every diagonal that it could have: absent ones are not present.
+
+    Faces that must stay clear, and faces whose group of braces has no tube, get none.
+    """
+    columns: dict[str, Column] = {}
+    here = np.zeros(1, dtype=np.int64)
+    for path, bracing in brace_paths(layout).items():
+        columns[path] = Choice((bracing, "cross"), here)
+    values = _Values(layout, columns, 1)
+    values.check_dimensions()
+    sections = {group: _tube_columns(values, group, tube) for group, tube in layout.tubes.items()}
+    if values.fault[0] is not None:
+        raise values.fault[0].as_error()
+    patterns, allowed = _patterns(values)
+    frame = scaffold(layout, [span.bays for span in layout.spans], allowed)
+    return _fill(values, frame, here, sections, patterns), frame
+
+
+def brace_paths(layout: Layout) -> dict[str, str]:
+    """Present bracing of every face and ring that may be braced, by path."""
+    uppers = [False, *(span.upper for span in layout.spans), False]
+
+    def has_tube(group: str) -> bool:
+        try:
+            layout.tube_group(group)
+        except InputError:
+            return False
+        return True
+
+    found = {}
+    for k, station in enumerate(layout.stations):
+        if (uppers[k] or uppers[k + 1]) and has_tube("ring braces"):
+            found[f"station.{station.name}.ring"] = station.ring
+    for span in layout.spans:
+        for face in FACES:
+            group = "side braces" if face in ("left", "right") else f"{face} braces"
+            there = face == "floor" or span.upper
+            if there and face not in span.clear and has_tube(group):
+                found[f"span.{span.name}.{face}"] = str(getattr(span, face))
+    return found
+
+
 def position_slopes(layout: Layout) -> dict[str, tuple[float, F64]]:
     """How the joints of a layout move with each of its dimensions.
 

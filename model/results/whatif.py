@@ -8,7 +8,7 @@ therefore changes of their own, ranked beside the single ones.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -16,7 +16,10 @@ import scipy.linalg
 from numpy.typing import NDArray
 
 from model.frame.batch import Batch
+from model.frame.generator import Scaffold
+from model.frame.layout import BRACING, Layout
 from model.frame.skeleton import F64
+from model.frame.variants import brace_paths, every_brace
 from model.results.twist import PER_DEGREE
 from model.solver.beam import member_axes, member_stiffness, natural_modes, natural_stiffness
 from model.solver.cases import TWIST, gauge, twist_and_bending
@@ -25,16 +28,29 @@ SINGULAR = 1e-9
 """A change that leaves less than this share of a member's own stiffness leaves a mechanism."""
 
 
+_KINDS = ("add", "exchange", "remove")
+
+
 @dataclass(frozen=True)
 class Change:
     """Members that are added or taken away together.
 
     add, remove : member numbers of the skeleton.
+    faces, bracing : when it is a change of bracing, the paths of the faces and their new bracing.
     """
 
     name: str
     add: tuple[int, ...] = ()
     remove: tuple[int, ...] = ()
+    faces: tuple[str, ...] = ()
+    bracing: str = ""
+
+    @property
+    def kind(self) -> str:
+        """``add``, ``exchange`` or ``remove``."""
+        if self.add and self.remove:
+            return "exchange"
+        return "add" if self.add else "remove"
 
 
 @dataclass(frozen=True, eq=False)
@@ -53,8 +69,13 @@ class WhatIf:
 
     @property
     def gain_per_kg(self) -> F64:
-        """Twist stiffness gained (or lost) for each kilogram added (or saved)."""
-        ratio: F64 = self.gain / np.abs(self.mass)
+        """Twist stiffness gained (or lost) for each kilogram added (or saved).
+
+        NaN for an exchange, which may weigh nothing.
+        """
+        one_way = np.array([change.kind != "exchange" for change in self.changes], dtype=bool)
+        weight = np.where(one_way, np.abs(self.mass), np.nan)
+        ratio: F64 = self.gain / weight
         return ratio
 
 
@@ -85,6 +106,28 @@ def what_if(batch: Batch, changes: Sequence[Change]) -> WhatIf:
     return WhatIf(tuple(changes), twist, twist - PER_DEGREE / flexible.compliance, added)
 
 
+def ranked(layout: Layout) -> WhatIf:
+    """Every single, paired and face-wise change of a layout, the best of each kind first.
+
+    Additions come first, most gain for each kilogram leading; then exchanges of one bracing for
+    another, most gain leading; then removals, least loss for each kilogram saved leading.
+    Changes that leave a mechanism come last.
+    """
+    batch, frame = every_brace(layout)
+    changes = [*face_changes(layout, batch, frame), *pair_changes(batch), *single_changes(batch)]
+    distinct = {(frozenset(c.add), frozenset(c.remove)): c for c in reversed(changes)}
+    found = what_if(batch, list(reversed(distinct.values())))
+    kind = np.array([_KINDS.index(change.kind) for change in found.changes])
+    merit = np.where(kind == _KINDS.index("exchange"), found.gain, found.gain_per_kg)
+    order = np.lexsort((-merit, kind, found.twist == 0.0))
+    return WhatIf(
+        tuple(found.changes[k] for k in order),
+        found.twist[order],
+        found.gain[order],
+        found.mass[order],
+    )
+
+
 def single_changes(batch: Batch) -> list[Change]:
     """Each absent member added and each present one taken away, one at a time."""
     names = batch.skeleton.member_names
@@ -104,6 +147,56 @@ def pair_changes(batch: Batch) -> list[Change]:
             name = f"{skeleton.member_names[m]} and its mirror image"
             changes.append(Change(name, remove=pair) if present[m] else Change(name, add=pair))
     return changes
+
+
+def face_changes(layout: Layout, batch: Batch, frame: Scaffold) -> list[Change]:
+    """Each face, ring and set of faces given another bracing.
+
+    layout, batch, frame : the layout and what ``model.frame.variants.every_brace`` makes of it.
+
+    Sets are the two sides of a span, all faces of a span, one face over all spans, and every
+    face of the frame; only where each of them changes.
+    """
+    present = batch.present[0]
+    now = brace_paths(layout)
+    changes = []
+    for name, paths in _face_sets(layout, now).items():
+        for bracing in BRACING:
+            if len(paths) > 1 and bracing == "open":
+                continue
+            changing = [p for p in paths if now[p] != bracing]
+            if not changing or (len(paths) > 1 and len(changing) < 2):
+                continue
+            add: list[int] = []
+            remove: list[int] = []
+            for path in changing:
+                mine = np.flatnonzero(frame.face == frame.faces.index(path))
+                wanted = frame.patterns[mine, BRACING.index(bracing)]
+                add += mine[wanted & ~present[mine]].tolist()
+                remove += mine[~wanted & present[mine]].tolist()
+            if add or remove:
+                changes.append(
+                    Change(
+                        f"{name}: {bracing}", tuple(add), tuple(remove), tuple(changing), bracing
+                    )
+                )
+    return changes
+
+
+def _face_sets(layout: Layout, now: Mapping[str, str]) -> dict[str, list[str]]:
+    sets: dict[str, list[str]] = {}
+    for path in now:
+        kind, name, face = path.split(".")
+        sets[f"{name} ring" if kind == "station" else f"{name} {face}"] = [path]
+    for span in layout.spans:
+        mine = [p for p in now if p.startswith(f"span.{span.name}.")]
+        sets[f"{span.name} sides"] = [p for p in mine if p.endswith((".left", ".right"))]
+        sets[f"{span.name}, all faces"] = mine
+    for face, word in (("floor", "whole floor"), ("top", "whole top")):
+        sets[word] = [p for p in now if p.endswith(f".{face}")]
+    sets["both sides, whole length"] = [p for p in now if p.endswith((".left", ".right"))]
+    sets["every face"] = [p for p in now if p.startswith("span.")]
+    return {name: paths for name, paths in sets.items() if paths}
 
 
 class _Flexibility:

@@ -6,10 +6,12 @@ import numpy as np
 import pytest
 
 from model.frame.batch import Batch
-from model.frame.variants import Choice, variants
+from model.frame.layout import with_span
+from model.frame.variants import Choice, every_brace, variants
+from model.results.detail import examine
 from model.results.twist import answers
-from model.results.whatif import Change, pair_changes, single_changes, what_if
-from tests.model.frame.layouts import box
+from model.results.whatif import Change, pair_changes, ranked, single_changes, what_if
+from tests.model.frame.layouts import box, random_layout
 
 FACES = ("floor", "top", "left", "right")
 
@@ -67,3 +69,31 @@ def test_gains_grow_until_the_last_face_closes() -> None:
     assert found.twist == pytest.approx([581.462, 1080.208, 13787.385], abs=5e-4)  # prototype
     singles = what_if(batch, [Change(str(m), add=(m,)) for m in sets[2]])
     assert singles.gain.sum() < 0.1 * found.gain[2]
+
+
+@pytest.mark.parametrize("seed", range(8))
+def test_every_ranked_change_of_a_random_layout_equals_solving_again(seed: int) -> None:
+    layout = random_layout(np.random.default_rng(seed))
+    batch, _ = every_brace(layout)
+    found = ranked(layout)
+    assert len({(c.add, c.remove) for c in found.changes}) == len(found.changes)
+    for k in range(0, len(found.changes), 7):
+        again = solved_again(batch, found.changes[k])
+        assert found.twist[k] == pytest.approx(0.0 if np.isnan(again) else again, rel=1e-8)
+
+
+def test_a_change_of_bracing_applied_to_the_layout_gives_the_promised_stiffness() -> None:
+    layout = box(bracing="single")
+    found = ranked(layout)
+    k = next(k for k, c in enumerate(found.changes) if c.name == "middle top: cross")
+    assert examine(with_span(layout, "middle", top="cross")).twist == pytest.approx(
+        found.twist[k], rel=1e-9
+    )
+
+
+def test_additions_lead_and_the_best_gain_for_each_kilogram_is_first() -> None:
+    found = ranked(box(bracing="single"))
+    kinds = [c.kind for c, twist in zip(found.changes, found.twist, strict=True) if twist > 0]
+    assert kinds == sorted(kinds)  # add, exchange, remove
+    adds = found.gain_per_kg[: kinds.count("add")]
+    assert (np.diff(adds) <= 1e-9).all()
