@@ -104,6 +104,18 @@ def frame_of(
     )
 
 
+def member_matrices(frame: Frame) -> F64:
+    """(M, 12, 12) stiffness of the members, vehicle axes; nothing at all against a free end."""
+    xi, xj, up, rigidity, ends = frame.geometry()
+    length = beam.lengths(xi, xj)
+    modes = beam.natural_modes(beam.member_axes(xi, xj, up), length)
+    natural = beam.natural_matrix(beam.natural_stiffness(length, rigidity, ends))
+    kept = np.where(ends >= RELEASED, 0.0, 1.0)
+    natural = natural * kept[:, :, None] * kept[:, None, :]
+    matrices: F64 = np.einsum("map,mab,mbq->mpq", modes, natural, modes, optimize=True)
+    return matrices
+
+
 def assemble(frame: Frame, matrices: F64) -> sp.csc_matrix:
     """(6J, 6J) sparse sum of member matrices (M, 12, 12)."""
     size = 6 * len(frame.joints)
