@@ -27,6 +27,7 @@ from model.solver.structure import (
     Idle,
     assemble,
     idle_rotations,
+    member_matrices,
 )
 
 REFINEMENTS = 12
@@ -97,7 +98,7 @@ def solve(frame: Frame) -> Answer:
 def factor(frame: Frame) -> Factored:
     """Factor a supported frame, or say why it cannot carry load."""
     loose.check_pieces(frame)
-    matrices = beam.member_stiffness(*frame.geometry())
+    matrices = member_matrices(frame)
     stiffness = assemble(frame, matrices)
     idle = idle_rotations(frame, matrices)
     for _ in range(SPINS):

@@ -12,7 +12,7 @@ from scipy.sparse.linalg import LinearOperator, eigsh, splu
 from model.errors import InputError, LooseFrame
 from model.frame.skeleton import F64
 from model.solver import beam, general
-from model.solver.structure import DIRECTIONS, Frame, assemble, idle_rotations
+from model.solver.structure import DIRECTIONS, Frame, assemble, idle_rotations, member_matrices
 
 DENSE = 1500
 """Up to this many free directions all modes are found at once; above, only those asked for."""
@@ -41,7 +41,7 @@ def modes(frame: Frame, count: int) -> Modes:
     """
     if count < 1:
         raise InputError("modes", str(count), "ask for one mode or more")
-    stiffness = assemble(frame, matrices := beam.member_stiffness(*frame.geometry()))
+    stiffness = assemble(frame, matrices := member_matrices(frame))
     try:
         idle = general.factor(frame).idle
     except LooseFrame:
