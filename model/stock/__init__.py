@@ -1,0 +1,1 @@
+"""What can be bought: materials, sections and stock lists."""
