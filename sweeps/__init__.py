@@ -1,0 +1,1 @@
+"""Which variants are tried, what matters most among them, which are best."""
