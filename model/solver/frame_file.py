@@ -210,10 +210,11 @@ def _section(entry: Entry) -> tuple[F64, bool]:
     if "corner_radius" in entry:
         size["corner_radius"] = entry["corner_radius"].number("a radius in m")
     try:
-        values = section_values(shape, size)
+        of_shape = section_values(shape, size)
     except InputError as error:
         raise InputError(f"{entry.path}.{error.field}", error.given, error.remedy) from None
-    array = np.array([values.A, values.Iy, values.Iz, values.J, values.Asy, values.Asz], float)
+    parts = (of_shape.A, of_shape.Iy, of_shape.Iz, of_shape.J, of_shape.Asy, of_shape.Asz)
+    array = np.array([float(part) for part in parts])
     if "shear" in entry and not entry["shear"].flag():
         array[4:] = np.inf
     return array, rotary

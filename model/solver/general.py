@@ -1,7 +1,7 @@
 """Solve one frame under its load cases: displacements, reactions, end forces, energy.
 
 The frame may have any joints, members and supports, too many supports included. The stiffness
-matrix is scaled to a unit diagonal, factored once, and each answer is refined against a residual
+matrix is scaled joint by joint, factored once, and each answer is refined against a residual
 summed member by member in extended precision, so slender frames and stiff joints keep their
 digits. A mechanism is found before anything is solved; see ``model.solver.loose``.
 """
@@ -35,7 +35,7 @@ SETTLED = 1e-15
 """Refinement stops when a correction is below this part of the answer."""
 
 SHIFT = 1e-15
-"""Added to the unit diagonal, so that a mechanism can be factored and then named."""
+"""Added to the diagonal of the scaled matrix, so that a mechanism can be factored and then named."""
 
 SPINS = 5
 """How often parts that spin between pinned ends are looked for."""
@@ -65,7 +65,7 @@ class Answer:
 class Factored:
     """A frame whose free directions are factored, idle motions grounded.
 
-    free : (6J,) bool; scale : (free,) one over the root of the diagonal; solve : scaled right
+    free : (6J,) bool; scale : (free,) one over the root of a stiffness; solve : scaled right
     side to scaled answer.
     """
 
@@ -112,9 +112,9 @@ def factor(frame: Frame) -> Factored:
 
 def _factor(frame: Frame, stiffness: sp.csc_matrix, idle: Idle) -> Factored:
     free = ~frame.held.ravel()
-    grounded = (stiffness + idle.grounding())[free][:, free]
-    diagonal = grounded.diagonal()
-    scale = 1 / np.sqrt(np.maximum(diagonal, SHIFT * diagonal.max(initial=1e-300)))
+    grounded = stiffness + idle.grounding()
+    scale = 1 / np.sqrt(_largest_of_joint(grounded.diagonal())[free])
+    grounded = grounded[free][:, free]
     if not free.any():
         return Factored(free, stiffness, idle, scale, lambda right: right)
     spread = sp.diags(scale)
@@ -126,6 +126,17 @@ def _factor(frame: Frame, stiffness: sp.csc_matrix, idle: Idle) -> Factored:
         options={"SymmetricMode": True},
     )
     return Factored(free, stiffness, idle, scale, factor.solve)
+
+
+def _largest_of_joint(diagonal: F64) -> F64:
+    """(6J,) largest stiffness of each joint against moving, and against turning.
+
+    One scale for all three directions keeps a direction soft that is soft beside the others.
+    """
+    by_joint = diagonal.reshape(-1, 2, 3).max(axis=2, keepdims=True)
+    by_joint = np.where(by_joint > 0, by_joint, 1.0)
+    scale: F64 = np.repeat(by_joint, 3, axis=2).ravel()
+    return scale
 
 
 def _refined(frame: Frame, factored: Factored, load: F64) -> Extended:
