@@ -2,58 +2,17 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from typing import TypeVar
 
 from model.errors import InputError
+from model.frame.consistency import check_layout
+from model.frame.vocabulary import FALLBACK, RIGID
 from model.stock.materials import Material
 from model.stock.sections import SHAPES
 
-BRACING = ("open", "single", "parallel", "cross")
-"""Ways to brace a face: none, one diagonal a bay (turning over from bay to bay), one diagonal a
-bay (all the same way), both diagonals."""
-
-FACES = ("floor", "top", "left", "right")
-
-RIGID = math.inf
-"""End stiffness of a welded end."""
-
-GROUPS = (
-    "lower rails",
-    "upper rails",
-    "cross members",
-    "top cross members",
-    "uprights",
-    "side braces",
-    "floor braces",
-    "top braces",
-    "ring braces",
-)
-"""Groups of members that share one tube size."""
-
-FALLBACK: Mapping[str, str] = {
-    "lower rails": "rails",
-    "upper rails": "rails",
-    "top cross members": "cross members",
-    "cross members": "ring members",
-    "uprights": "ring members",
-    "side braces": "braces",
-    "floor braces": "braces",
-    "top braces": "braces",
-    "ring braces": "braces",
-}
-"""The group whose tube is used when a group has none of its own."""
-
-ENTRIES = ("spring mounts", "linkage")
-"""How the twist couple enters: as vertical forces at the spring mounts alone, or with the
-sideways forces that wishbones add at the upper and lower pickups of the same ring."""
-
-
-MOST_BAYS = 20
-
-_Named = TypeVar("_Named", "Station", "Span")
+_Named = TypeVar("_Named", "Station", "Span", "Hoop")
 
 
 @dataclass(frozen=True)
@@ -65,6 +24,8 @@ class Station:
     height_low, height_high : height of the rails above the ground, joint centres [m].
     ring : bracing of the ring's plane; ``bottom``, ``top``, ``uprights`` say which of the ring's
         own members are there.
+    outrigger : distance between the outer ends of the outriggers at the lower rails [m], 0 for
+        none. Outer ends of neighbouring stations are joined by sills.
     """
 
     name: str
@@ -77,6 +38,7 @@ class Station:
     bottom: bool = True
     top: bool = True
     uprights: bool = True
+    outrigger: float = 0.0
 
 
 @dataclass(frozen=True)
@@ -86,6 +48,8 @@ class Span:
     clear : faces that must stay open (cockpit opening, engine bay floor): no brace may be put
         there and the rings between the bays have no member there.
     upper : whether upper rails run through this span.
+    tube : group whose tube everything in this span is made of (a subframe, a bolted upper
+        structure); empty for the usual groups.
     """
 
     name: str
@@ -96,6 +60,26 @@ class Span:
     right: str = "open"
     upper: bool = True
     clear: tuple[str, ...] = ()
+    tube: str = ""
+
+
+@dataclass(frozen=True)
+class Hoop:
+    """A hoop across the vehicle, standing on the highest rails of a station.
+
+    height : of its top above the ground [m]; width : of its top [m]; lean : how far the top
+        lies behind the feet [m].
+    stays_to : station whose highest rails the two stays run to, empty for none.
+    bracing : of the hoop's plane, ``open``, ``single`` or ``cross``.
+    """
+
+    name: str
+    station: str
+    height: float
+    width: float
+    lean: float = 0.0
+    stays_to: str = ""
+    bracing: str = "open"
 
 
 @dataclass(frozen=True)
@@ -156,9 +140,10 @@ class Layout:
     rear_mount: str = "low"
     entry: str = "spring mounts"
     masses: tuple[Mass, ...] = field(default=())
+    hoops: tuple[Hoop, ...] = field(default=())
 
     def __post_init__(self) -> None:
-        _check(self)
+        check_layout(self)
 
     @property
     def rails(self) -> int:
@@ -172,6 +157,15 @@ class Layout:
     def span(self, name: str) -> Span:
         """The span of that name."""
         return _named(self.spans, "span", name)
+
+    def hoop(self, name: str) -> Hoop:
+        """The hoop of that name."""
+        return _named(self.hoops, "hoop", name)
+
+    def tall(self, station: int) -> bool:
+        """Whether upper rails reach the station of that number."""
+        spans = self.spans[max(station - 1, 0) : station + 1]
+        return any(span.upper for span in spans)
 
     def tube_group(self, group: str) -> str:
         """The group whose tube ``group`` is made of."""
@@ -197,6 +191,13 @@ def with_span(layout: Layout, name: str, **change: object) -> Layout:
     return replace(layout, spans=tuple(changed))
 
 
+def with_hoop(layout: Layout, name: str, **change: object) -> Layout:
+    """The layout with fields of one hoop changed."""
+    layout.hoop(name)
+    changed = (replace(h, **change) if h.name == name else h for h in layout.hoops)  # type: ignore[arg-type]
+    return replace(layout, hoops=tuple(changed))
+
+
 def with_tube(layout: Layout, group: str, **change: object) -> Layout:
     """The layout with fields of one group's tube changed."""
     if group not in layout.tubes:
@@ -205,85 +206,6 @@ def with_tube(layout: Layout, group: str, **change: object) -> Layout:
     tubes = dict(layout.tubes)
     tubes[group] = replace(tubes[group], **change)  # type: ignore[arg-type]
     return replace(layout, tubes=tubes)
-
-
-def _check(layout: Layout) -> None:
-    """Refuse an arrangement that contradicts itself; dimensions are checked with the batch."""
-    stations, spans = layout.stations, layout.spans
-    if len(stations) < 2:
-        raise InputError("station", f"{len(stations)} given", "give at least two key stations")
-    if len(spans) != len(stations) - 1:
-        raise InputError(
-            "span",
-            f"{len(spans)} given",
-            f"give one span between each two stations, {len(stations) - 1} here",
-        )
-    for kind, names in (("station", [s.name for s in stations]), ("span", [s.name for s in spans])):
-        for name in names:
-            if not name or "." in name:
-                raise InputError(f"{kind} name", repr(name), "use letters and no full stop")
-            if names.count(name) > 1:
-                raise InputError(f"{kind} name", repr(name), "use each name once")
-    for axle, name, at in (("front", layout.front_axle, 0.0), ("rear", layout.rear_axle, 1.0)):
-        station = layout.station(name)
-        if station.at != at:
-            raise InputError(
-                f"station.{name}.at", f"{station.at:g}", f"the {axle} axle lies at {at:g}"
-            )
-    for axle, mount in (("front", layout.front_mount), ("rear", layout.rear_mount)):
-        if mount not in ("low", "high"):
-            raise InputError(f"{axle}_mount", repr(mount), "use low or high")
-    if layout.entry not in ENTRIES:
-        raise InputError("entry", repr(layout.entry), f"use one of: {', '.join(ENTRIES)}")
-    uppers = [False, *(span.upper for span in spans), False]
-    for station, before, after in zip(stations, uppers[:-1], uppers[1:], strict=True):
-        _check_bracing(f"station.{station.name}.ring", station.ring)
-        tall = before or after
-        if station.ring != "open" and not tall:
-            raise InputError(
-                f"station.{station.name}.ring",
-                station.ring,
-                "set it open: there is no upper rail here to brace to",
-            )
-        at_axle = {layout.front_axle: layout.front_mount, layout.rear_axle: layout.rear_mount}
-        high = at_axle.get(station.name) == "high" or layout.entry == "linkage"
-        if station.name in at_axle and high and not tall:
-            raise InputError(
-                f"station.{station.name}",
-                "no upper rail",
-                "mount the suspension low with entry = spring mounts, or run upper rails here",
-            )
-    for span in spans:
-        if span.bays < 1 or span.bays > MOST_BAYS:
-            raise InputError(f"span.{span.name}.bays", str(span.bays), f"use 1 to {MOST_BAYS}")
-        for face in FACES:
-            check_face(span, face, getattr(span, face))
-        for face in span.clear:
-            if face not in FACES:
-                raise InputError(
-                    f"span.{span.name}.clear", repr(face), f"use faces: {', '.join(FACES)}"
-                )
-    layout.tube_group("lower rails")
-    for group, tube in layout.tubes.items():
-        if group not in GROUPS and group not in FALLBACK.values():
-            raise InputError("tube", repr(group), f"use one of: {', '.join(GROUPS)}")
-        if tube.shape not in SHAPES:
-            raise InputError(f"tube.{group}.shape", tube.shape, f"use one of: {', '.join(SHAPES)}")
-
-
-def check_face(span: Span, face: str, bracing: str) -> None:
-    """Refuse a bracing that this face of the span cannot have."""
-    field_name = f"span.{span.name}.{face}"
-    _check_bracing(field_name, bracing)
-    if bracing != "open" and face in span.clear:
-        raise InputError(field_name, bracing, f"set it open: the {face} must stay clear here")
-    if bracing != "open" and face != "floor" and not span.upper:
-        raise InputError(field_name, bracing, "set it open: there is no upper rail in this span")
-
-
-def _check_bracing(field_name: str, bracing: str) -> None:
-    if bracing not in BRACING:
-        raise InputError(field_name, repr(bracing), f"use one of: {', '.join(BRACING)}")
 
 
 def _named(items: tuple[_Named, ...], kind: str, name: str) -> _Named:

@@ -17,9 +17,10 @@ from numpy.typing import NDArray
 
 from model.frame.batch import Batch
 from model.frame.generator import Scaffold
-from model.frame.layout import BRACING, Layout
+from model.frame.layout import Layout
 from model.frame.skeleton import F64
 from model.frame.variants import brace_paths, every_brace
+from model.frame.vocabulary import BRACING, MEETING
 from model.results.twist import PER_DEGREE
 from model.solver.beam import member_axes, member_stiffness, natural_modes, natural_stiffness
 from model.solver.cases import TWIST, gauge, twist_and_bending
@@ -158,10 +159,10 @@ def face_changes(layout: Layout, batch: Batch, frame: Scaffold) -> list[Change]:
     face of the frame; only where each of them changes.
     """
     present = batch.present[0]
-    now = brace_paths(layout)
+    now = {p: b for p, b in brace_paths(layout).items() if b not in MEETING}
     changes = []
     for name, paths in _face_sets(layout, now).items():
-        for bracing in BRACING:
+        for bracing in ("open", "single", "parallel", "cross"):
             if len(paths) > 1 and bracing == "open":
                 continue
             changing = [p for p in paths if now[p] != bracing]
