@@ -12,6 +12,7 @@ is taken in the same order; so the two can be held against each other entry by e
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Any
 
@@ -51,11 +52,22 @@ class Members:
     sound: NDArray[np.bool_]
 
 
-def solve_plain(problem: Problem, solution: Solution, first: int, last: int) -> None:
-    """Solve frames ``first`` to ``last`` and write the answers into ``solution``."""
-    for start in range(first, last, AT_ONCE):
-        with np.errstate(all="ignore"):
-            _solve_side_by_side(problem, solution, slice(start, min(start + AT_ONCE, last)))
+class Plain:
+    """One problem ready for the plain solver; used like ``kernel.Compiled``."""
+
+    def __init__(self, problem: Problem, solution: Solution) -> None:
+        self.problem, self.solution = problem, solution
+
+    def worker(self) -> Callable[[int, int], None]:
+        """A function that solves frames ``first`` to ``last``."""
+
+        def solve_some(first: int, last: int) -> None:
+            for start in range(first, last, AT_ONCE):
+                rows = slice(start, min(start + AT_ONCE, last))
+                with np.errstate(all="ignore"):
+                    _solve_side_by_side(self.problem, self.solution, rows)
+
+        return solve_some
 
 
 def _solve_side_by_side(problem: Problem, solution: Solution, rows: slice) -> None:
@@ -64,9 +76,9 @@ def _solve_side_by_side(problem: Problem, solution: Solution, rows: slice) -> No
     diagonal, below = assemble(problem, members)
     support(problem, diagonal)
     absent = set_absent_joints(diagonal)
-    status = factor(plan, diagonal, below)
+    status = impossible_loads(problem, rows, absent)
+    factor(plan, diagonal, below, status)
     force = joint_forces(problem, rows)
-    _mark_impossible_loads(problem, rows, absent, status)
     y = forward(plan, diagonal, below, force)
     loose = status != 0
     compliance = (y * y).sum(axis=(1, 2)).T
@@ -146,9 +158,8 @@ def set_absent_joints(diagonal: F64) -> NDArray[np.bool_]:
     return absent
 
 
-def factor(plan: Plan, diagonal: F64, below: F64) -> Array:
-    """Block Cholesky in place; returns the status (n,) of every frame."""
-    status = np.zeros(diagonal.shape[-1], dtype=np.int32)
+def factor(plan: Plan, diagonal: F64, below: F64, status: Array) -> None:
+    """Block Cholesky in place; marks the first loose direction in ``status`` (n,)."""
     for j in range(plan.joints):
         assembled = np.einsum("aan->an", diagonal[j]).copy()
         for b in range(plan.left_start[j], plan.left_start[j + 1]):
@@ -160,7 +171,6 @@ def factor(plan: Plan, diagonal: F64, below: F64) -> Array:
                 left, above = below[plan.update_a[pair]], below[plan.update_b[pair]]
                 below[b] -= np.einsum("ikn,jkn->ijn", left, above)
             _divide(below[b], diagonal[j])
-    return status
 
 
 def _cholesky(block: F64, assembled: F64, joint: int, status: Array) -> None:
@@ -191,15 +201,15 @@ def joint_forces(problem: Problem, rows: slice) -> F64:
     return force
 
 
-def _mark_impossible_loads(
-    problem: Problem, rows: slice, absent: NDArray[np.bool_], status: Array
-) -> None:
-    """Forces that are not numbers, or that push a joint no member holds."""
+def impossible_loads(problem: Problem, rows: slice, absent: NDArray[np.bool_]) -> Array:
+    """Status (n,) after forces that are not numbers, or that push a joint no member holds."""
+    status = np.zeros(absent.shape[-1], dtype=np.int32)
     for k, (joint, direction) in enumerate(zip(problem.joint, problem.direction, strict=True)):
         value = problem.value[rows][:, :, k]
         pushed = (value != 0).any(axis=1) & absent[problem.plan.step[joint]]
         wrong = pushed | ~np.isfinite(value).all(axis=1)
         status[wrong & (status == 0)] = 1 + 6 * joint + direction
+    return status
 
 
 def forward(plan: Plan, diagonal: F64, below: F64, force: F64) -> F64:

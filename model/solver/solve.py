@@ -14,15 +14,31 @@ from itertools import count
 from model.frame.batch import Batch
 from model.frame.skeleton import I32
 from model.solver.cases import Loads
-from model.solver.plain import solve_plain
-from model.solver.problem import Problem, Solution, empty_solution, problem
+from model.solver.compiled import LANES, Compiled, compile_for
+from model.solver.plain import Plain
+from model.solver.problem import Solution, empty_solution, problem
 
-__all__ = ["Solution", "solve"]
+__all__ = ["Solution", "compile_now", "solve"]
 
-BLOCK = 512
+BLOCK = 256
 """Frames a thread takes at a time."""
 
-Worker = Callable[[Problem, Solution, int, int], None]
+COMPILING = "Compiling the frame solver for this machine, once; it takes about ten seconds."
+
+
+def compile_now(progress: Callable[[str], None] | None = None) -> None:
+    """Have the solver compiled before it is needed; says so if that takes more than a moment.
+
+    The compiled code is kept in numba's cache, beside the package or, where that cannot be
+    written, in the user's cache folder; later starts only fetch it.
+    """
+    notice = threading.Timer(1.0, progress or str, (COMPILING,))
+    notice.daemon = True
+    notice.start()
+    try:
+        compile_for(LANES)
+    finally:
+        notice.cancel()
 
 
 def solve(
@@ -68,25 +84,28 @@ def solve(
         raise ValueError("gradients belong to a case: give energy_case")
     asked = problem(batch, loads, gauge, energy_case)
     solution = empty_solution(asked, displacements, gradients)
-    in_blocks(solve_plain, asked, solution, threads or os.cpu_count() or 1, block)
+    solver = Plain(asked, solution) if plain else Compiled(asked, solution)
+    in_blocks(solver.worker, len(asked), threads or os.cpu_count() or 1, block)
     return solution
 
 
-def in_blocks(worker: Worker, asked: Problem, solution: Solution, threads: int, block: int) -> None:
-    """Hand out blocks of frames to threads until none is left; raises what a thread raised."""
-    n = len(asked)
+def in_blocks(
+    make_worker: Callable[[], Callable[[int, int], None]], n: int, threads: int, block: int
+) -> None:
+    """Hand out blocks of ``n`` frames to threads until none is left.
+
+    Every thread makes itself a worker, which solves frames from the first to the last it is
+    told. What a thread raises is raised here once all have ended.
+    """
     starts = range(0, n, block)
-    if threads <= 1 or len(starts) <= 1:
-        for start in starts:
-            worker(asked, solution, start, min(start + block, n))
-        return
     ticket = count()
     failures: list[BaseException] = []
 
     def work() -> None:
         try:
+            worker = make_worker()
             while not failures and (turn := next(ticket)) < len(starts):
-                worker(asked, solution, starts[turn], min(starts[turn] + block, n))
+                worker(starts[turn], min(starts[turn] + block, n))
         except BaseException as failure:  # noqa: BLE001 - handed to the caller below
             failures.append(failure)
 
