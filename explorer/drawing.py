@@ -6,6 +6,7 @@ z up) [m]. The canvas and the SVG views both draw from a ``FrameDrawing``.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import TypeVar
@@ -13,7 +14,7 @@ from typing import TypeVar
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from explorer.numbers import count, listed, with_unit
+from explorer.numbers import count, listed, number, with_unit
 from explorer.units import METRIC, Units
 from model.errors import InputError
 from model.frame.skeleton import F64, I32, Skeleton
@@ -47,6 +48,18 @@ class MemberValue:
         """Greatest known amount; 0 when there is none."""
         known = self.amount[~np.isnan(self.amount)]
         return float(known.max()) if known.size else 0.0
+
+    def write(self, member: int) -> str:
+        """The number of one member with its unit."""
+        return with_unit(float(self.amount[member]) * self.factor, self.unit, 2)
+
+    def ticks(self) -> list[tuple[float, str]]:
+        """Round numbers for a legend: place between 0 and the highest (0..1), text."""
+        highest = (self.highest or 1.0) * self.factor
+        step = _round_step(highest / 2.2)
+        marks = [i * step for i in range(int(highest / step + 1e-9) + 1)]
+        texts = [number(mark, 1) for mark in marks[:-1]] + [with_unit(marks[-1], self.unit, 1)]
+        return [(round(mark / highest, 4), t) for mark, t in zip(marks, texts, strict=True)]
 
 
 @dataclass(frozen=True, eq=False)
@@ -180,6 +193,14 @@ class FrameDrawing:
         used = self.joints[np.unique(self.members[self.shown])] if self.shown.any() else self.joints
         return used.min(axis=0), used.max(axis=0)
 
+    def foot_of(self, station: Station) -> F64:
+        """The lowest joint of a station, the left one of two [m]: where its name is written."""
+        off = np.abs(self.joints[:, 0] - station.x)
+        there = np.flatnonzero(off < off.min() + 1e-3)
+        ends = self.joints[there]
+        foot: F64 = ends[np.lexsort((ends[:, 1], np.round(ends[:, 2], 3)))[0]]
+        return foot
+
     @property
     def wheelbase(self) -> float | None:
         """Distance of the axles [m], when they are known."""
@@ -231,7 +252,7 @@ def drawing_in_words(drawing: FrameDrawing, units: Units = METRIC) -> str:
     if drawing.value is not None and drawing.value.highest > 0:
         amount = np.where(drawing.shown, np.nan_to_num(drawing.value.amount), 0.0)
         top = np.argsort(-amount, kind="stable")[:3]
-        said = [f"{drawing.names[m]} ({_amount(drawing.value, m)})" for m in top if amount[m] > 0]
+        said = [f"{drawing.names[m]} ({drawing.value.write(m)})" for m in top if amount[m] > 0]
         parts.append(f"{drawing.value.words}, greatest in {listed(said)}.")
     if drawing.kind is not None:
         kind = drawing.kind
@@ -243,8 +264,9 @@ def drawing_in_words(drawing: FrameDrawing, units: Units = METRIC) -> str:
     return " ".join(parts)
 
 
-def _amount(value: MemberValue, member: int) -> str:
-    return with_unit(float(value.amount[member]) * value.factor, value.unit, 2)
+def _round_step(most: float) -> float:
+    power = 10.0 ** math.floor(math.log10(most))
+    return float(max(s for s in (1.0, 2.0, 5.0) if s * power <= most * (1 + 1e-9)) * power)
 
 
 def _check(drawing: FrameDrawing, amount: int) -> None:

@@ -60,7 +60,7 @@ DARK = Colours(
     accent="#6FB0E6",
     warning="#EE9068",
     palette=("#5793C8", "#EE9068", "#7DE8D2", "#C3A5F2", "#F6DA6A", "#C2593F"),
-    ramp=("#46536A", "#6F5286", "#AD5480", "#E06C5A", "#F2A24C", "#FBE28A"),
+    ramp=("#505D75", "#7A5B8F", "#B2587F", "#E06C5A", "#F2A24C", "#FBE28A"),
     tube="#9AA9B6",
     quiet="#5F6A75",
 )

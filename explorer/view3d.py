@@ -27,7 +27,6 @@ from explorer.drawing import (
     drawing_in_words,
     drawing_of,
 )
-from explorer.numbers import number, with_unit
 from explorer.units import METRIC, Units
 
 __all__ = [
@@ -138,7 +137,9 @@ def canvas_data(
         "loads": [[a.joint, _direction(a.direction), a.words] for a in drawing.loads],
         "ghost": _ghost(drawing),
         "labels": [[list(label.at), label.words] for label in drawing.labels],
-        "stations": [[station.name, _foot(drawing, station)] for station in drawing.stations],
+        "stations": [
+            [station.name, drawing.foot_of(station).tolist()] for station in drawing.stations
+        ],
         "ruler": _ruler(units),
         "light": theme.as_data(dark=False),
         "dark": theme.as_data(dark=True),
@@ -148,15 +149,6 @@ def canvas_data(
 def _points(xyz: Any) -> list[list[float]]:
     points: list[list[float]] = np.round(np.asarray(xyz, np.float64), 5).tolist()
     return points
-
-
-def _foot(drawing: FrameDrawing, station: Station) -> list[float]:
-    """The lowest joint of a station, the left one of two: where its name is written."""
-    off = np.abs(drawing.joints[:, 0] - station.x)
-    there = np.flatnonzero(off < off.min() + 1e-3)
-    ends = drawing.joints[there]
-    foot = there[np.lexsort((ends[:, 1], np.round(ends[:, 2], 3)))[0]]
-    return _points(drawing.joints[[foot]])[0]
 
 
 def _details(drawing: FrameDrawing, units: Units) -> list[str]:
@@ -177,22 +169,9 @@ def _value(drawing: FrameDrawing) -> dict[str, Any] | None:
     return {
         "words": value.words,
         "parts": [None if math.isnan(a) else round(a / highest, 4) for a in value.amount.tolist()],
-        "texts": [with_unit(a * value.factor, value.unit, 2) for a in value.amount.tolist()],
-        "ticks": _ticks(highest * value.factor, value.unit),
+        "texts": [value.write(m) for m in range(len(value.amount))],
+        "ticks": [list(tick) for tick in value.ticks()],
     }
-
-
-def _ticks(highest: float, unit: str) -> list[list[Any]]:
-    step = _round_step(highest / 2.2)
-    marks = [i * step for i in range(int(highest / step + 1e-9) + 1)]
-    texts = [number(mark, 2) for mark in marks]
-    texts[-1] = with_unit(marks[-1], unit, 2)
-    return [[round(m / highest, 4), t] for m, t in zip(marks, texts, strict=True)]
-
-
-def _round_step(least: float) -> float:
-    power = 10.0 ** math.floor(math.log10(least))
-    return float(max(s for s in (1.0, 2.0, 5.0) if s * power <= least * (1 + 1e-9)) * power)
 
 
 def _kind(drawing: FrameDrawing) -> dict[str, Any] | None:

@@ -200,7 +200,8 @@ class Painter {
 
   labels(lens) {
     const { stations, labels } = this.data;
-    const wanted = stations.map(([name, at]) => [lens(at), name, 22]);
+    const endOn = Math.abs(lens.towards[0]) > 0.94; // the stations lie behind one another
+    const wanted = endOn ? [] : stations.map(([name, at]) => [lens(at), name, 22]);
     for (const [at, words] of labels) wanted.push([lens(at), words, -10]);
     wanted.sort((a, b) => b[0][2] - a[0][2]);
     for (const [[x, y], words, down] of wanted) {
