@@ -43,7 +43,7 @@ def cantilever(length: float, rigidity: np.ndarray, load: np.ndarray, ends=None)
     return np.linalg.solve(k[TIP, TIP], load)
 
 
-# ---- cantilever, all six end loads ---------------------------------------------------------
+# ---- cantilever, all six end loads -----------------------------------------------------------
 
 
 @pytest.mark.parametrize("direction", range(6))
@@ -115,7 +115,7 @@ def test_energy_by_kind_is_that_of_the_closed_forms(kind):
     assert energy.sum() == pytest.approx(load @ tip / 2, rel=1e-10)
 
 
-# ---- printed natural stiffnesses ------------------------------------------------------------
+# ---- printed natural stiffnesses -------------------------------------------------------------
 
 
 def test_natural_stiffness_of_a_welded_tube_agrees_with_the_printed_values():
@@ -142,7 +142,7 @@ def test_fixity_factors_give_the_stiffness_of_monforton_and_wu():
     assert k[2:5] * length / ei == pytest.approx([0.957447, 0.382979, 2.553191], abs=5e-7)
 
 
-# ---- flexible and free ends ---------------------------------------------------------------
+# ---- flexible and free ends ------------------------------------------------------------------
 
 
 @pytest.mark.parametrize("seed", range(12))
@@ -201,7 +201,7 @@ def test_deep_short_members_keep_their_digits():
     assert k[3] == pytest.approx(float(-b / (a * a - b * b)), rel=1e-15)
 
 
-# ---- axes -------------------------------------------------------------------------------------
+# ---- axes ------------------------------------------------------------------------------------
 
 
 def test_local_axes_follow_up():

@@ -36,7 +36,7 @@ def turned(frame: Frame, q: np.ndarray) -> Frame:
     return replace(frame, xyz=frame.xyz @ q.T, up=frame.up @ q.T, loads=loads)
 
 
-# ---- balance and energy ------------------------------------------------------------------------
+# ---- balance and energy ----------------------------------------------------------------------
 
 
 @few
@@ -91,7 +91,7 @@ def test_held_directions_do_not_move_and_free_ones_have_no_reaction(seed):
     assert not answer.reaction[:, ~frame.held].any()
 
 
-# ---- laws -------------------------------------------------------------------------------------
+# ---- laws ------------------------------------------------------------------------------------
 
 
 @few
@@ -217,7 +217,7 @@ def test_free_rotations_of_joints_are_left_out():
     assert tension[[4, 5, 3]] == pytest.approx([bd, cd, 3 + 1 + 2], rel=1e-12)
 
 
-# ---- slender, stiff, large -----------------------------------------------------------------------
+# ---- slender, stiff, large -------------------------------------------------------------------
 
 
 def chain(pieces: int, length: float = 10.0) -> Frame:
@@ -255,7 +255,7 @@ def test_a_frame_of_3000_members_balances():
     assert answer.reaction[0, :, 2].sum() == pytest.approx(1000, rel=1e-9)
 
 
-# ---- vibration ----------------------------------------------------------------------------------
+# ---- vibration -------------------------------------------------------------------------------
 
 
 @settings(max_examples=10, deadline=None)

@@ -61,7 +61,7 @@ def falls(data, joint, direction, remedy):
     assert remedy in caught.value.remedy
 
 
-# ---- supports -----------------------------------------------------------------------------------
+# ---- supports --------------------------------------------------------------------------------
 
 
 def test_a_frame_without_supports_is_refused_in_its_own_words():
@@ -115,7 +115,7 @@ def test_everything_held_moves_nothing_and_takes_the_loads_back():
     assert stands(data)["reactions"]["B"] == [0, 0, 100, 0, 0, 0]
 
 
-# ---- parts ----------------------------------------------------------------------------------------
+# ---- parts -----------------------------------------------------------------------------------
 
 
 def test_a_part_that_hangs_on_nothing_is_named():
@@ -125,7 +125,7 @@ def test_a_part_that_hangs_on_nothing_is_named():
     stands(data)
 
 
-# ---- pins ------------------------------------------------------------------------------------------
+# ---- pins ------------------------------------------------------------------------------------
 
 
 def test_a_pinned_square_racks_and_a_diagonal_holds_it():
