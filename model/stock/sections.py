@@ -89,3 +89,18 @@ def section_values(
         if (given["wall"] > across / 2).any():
             raise InputError("wall", "too thick", "keep it at most half the outside size")
     return SHAPES[shape].function(*arrays, poisson)
+
+
+def section_slopes(
+    shape: str, sizes: Mapping[str, float], poisson: float = 0.3
+) -> dict[str, SectionValues]:
+    """Slope of every section value with each size, by the complex step (exact to rounding)."""
+    names = SHAPES[shape].sizes
+    found = {}
+    for name in names:
+        stepped = [np.asarray(sizes[n] + 1j * 1e-30 * (n == name)) for n in names]
+        values = SHAPES[shape].function(*stepped, poisson)
+        found[name] = SectionValues(
+            *(getattr(values, f).imag / 1e-30 for f in ("A", "Iy", "Iz", "J", "Asy", "Asz"))
+        )
+    return found

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from model.frame.layout import Layout, Span, Station, Tube
+from model.frame.layout import Hoop, Layout, Span, Station, Tube
 from model.stock.materials import Material
 
 STEEL = Material(
@@ -70,16 +70,20 @@ def box(bays: int = 8, bracing: str = "open", ring: str = "single") -> Layout:
     )
 
 
-def random_layout(rng: np.random.Generator) -> Layout:
-    """A buildable layout: two or four rails, three to six stations, any bracing."""
+def random_layout(rng: np.random.Generator, *, symmetric: bool = False) -> Layout:
+    """A buildable layout: two or four rails, three to six stations, any bracing.
+
+    symmetric : braces of the right side follow those of the left one.
+    """
     uppers = bool(rng.integers(2))
+    outriggers = rng.random() < 0.2
     count = int(rng.integers(3, 7))
     inner = np.sort(rng.uniform(0.1, 0.9, count - 2)) + 0.03 * np.arange(count - 2)
     at = np.concatenate([[0.0], np.minimum(inner, 0.97), [1.0]])
-    bracing = ("open", "single", "parallel", "cross")
+    flat = ("open", "single", "parallel", "cross")
 
-    def pick(tall: bool) -> str:
-        return str(rng.choice(bracing)) if tall else "open"
+    def pick(there: bool, *meeting: str) -> str:
+        return str(rng.choice((*flat, *meeting))) if there else "open"
 
     stations = tuple(
         Station(
@@ -89,28 +93,36 @@ def random_layout(rng: np.random.Generator) -> Layout:
             float(rng.uniform(0.1, 0.3)),
             float(rng.uniform(0.4, 1.0)) if uppers else 0.0,
             float(rng.uniform(0.5, 0.9)) if uppers else 0.0,
-            ring=pick(uppers),
+            ring=pick(uppers, "chevron"),
+            outrigger=1.4 if outriggers else 0.0,
         )
         for k, x in enumerate(at)
     )
+    sides = [(pick(uppers, "K", "chevron"), pick(uppers, "K", "chevron")) for _ in at]
     spans = tuple(
         Span(
             f"p{k}",
             int(rng.integers(1, 4)),
-            floor=pick(True),
-            top=pick(uppers),
-            left=pick(uppers),
-            right=pick(uppers),
+            floor=pick(True, "K"),
+            top=pick(uppers, "K"),
+            left=sides[k][0],
+            right=sides[k][0 if symmetric else 1],
             upper=uppers,
         )
         for k in range(count - 1)
     )
+    hoops = ()
+    if rng.random() < 0.3:
+        bracing = str(rng.choice(("open", "single", "cross")))
+        hoops = (Hoop("hoop", "s1", 1.3, 0.5, 0.05, "s2", bracing),)
     tubes = {
         "rails": round_tube(float(rng.uniform(25, 60)), float(rng.uniform(1, 4))),
         "ring members": rectangular_tube(
             float(rng.uniform(20, 50)), float(rng.uniform(20, 80)), float(rng.uniform(1, 4))
         ),
         "braces": round_tube(float(rng.uniform(15, 40)), float(rng.uniform(1, 3))),
+        "hoop": round_tube(40, 2),
+        "outriggers": round_tube(30, 2),
     }
     return Layout(
         name="random",
@@ -122,5 +134,6 @@ def random_layout(rng: np.random.Generator) -> Layout:
         tubes=tubes,
         front_axle="s0",
         rear_axle=f"s{count - 1}",
+        hoops=hoops,
         entry="linkage" if uppers and rng.integers(2) else "spring mounts",
     )

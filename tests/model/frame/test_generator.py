@@ -1,12 +1,15 @@
 """The generator builds the joints and members that the arrangement describes."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
 from model.errors import InputError
-from model.frame.layout import Layout, Span, Station, with_span, with_station, with_tube
+from model.frame.layout import Hoop, Layout, Span, Station, with_span, with_station, with_tube
 from model.frame.variants import Choice, one, variants
-from tests.model.frame.layouts import box, ladder, random_layout
+from model.results.twist import answers
+from tests.model.frame.layouts import STEEL, box, ladder, random_layout, round_tube
 
 LADDER_MASS = 60.288
 """Mass [kg] of a ladder 3.0 x 0.8 m, rails 50 x 100 x 3, five cross members 50 x 60 x 3, density
@@ -61,7 +64,7 @@ def test_every_joint_and_member_of_a_symmetric_frame_has_a_mirror_partner() -> N
 def test_joint_positions_are_mirror_images() -> None:
     rng = np.random.default_rng(3)
     for _ in range(20):
-        batch = one(random_layout(rng))
+        batch = one(random_layout(rng, symmetric=True))
         flipped = batch.xyz[0, batch.skeleton.mirror_joint] * [1, -1, 1]
         assert np.array_equal(flipped, batch.xyz[0])
 
@@ -192,3 +195,81 @@ def test_upper_rails_over_part_of_the_length_leave_the_rest_a_ladder() -> None:
     joined = np.unique(batch.skeleton.members)
     assert len(batch.skeleton.joints) == 20
     assert len(joined) == 16
+
+
+@pytest.mark.parametrize(
+    ("face", "bracing", "joints", "members"),
+    [
+        # two half-diagonals a bay; the member they meet at becomes two
+        ("left", "K", 4, 4 * 2 + 4),
+        ("left", "chevron", 4, 4 * 2 + 4),
+        ("floor", "K", 4, 4 * 2 + 4),
+    ],
+)
+def test_braces_that_meet_in_the_middle_of_a_member_add_a_joint_there(
+    face: str, bracing: str, joints: int, members: int
+) -> None:
+    plain, met = one(box(bays=4)), one(with_span(box(bays=4), "middle", **{face: bracing}))
+    assert len(met.skeleton.joints) - len(plain.skeleton.joints) == joints
+    assert met.present.sum() - plain.present.sum() == members
+    halves = [k for k, name in enumerate(met.skeleton.member_names) if "half" in name]
+    assert np.ptp(met.lengths()[0, halves].reshape(-1, 2), axis=1) == pytest.approx(0, abs=1e-12)
+
+
+def test_a_split_member_without_braces_changes_nothing() -> None:
+    """K braces of next to no stiffness: the frame is as stiff as without them."""
+    thin = {**box().tubes, "braces": round_tube(20, 1, replace(STEEL, E=1e3, G=1e3))}
+    bare = Layout(**{**box().__dict__, "tubes": thin})
+    braced = with_span(bare, "middle", left="K", right="K")
+    assert answers(one(braced), 1).twist[0] == pytest.approx(
+        answers(one(bare), 1).twist[0], rel=1e-6
+    )
+
+
+def test_meeting_braces_without_a_member_to_meet_at_are_refused() -> None:
+    layout = with_span(box(), "middle", clear=("right",), left="K")
+    assert one(layout).present.any()
+    with pytest.raises(InputError, match=r"span.middle.floor = K: keep the member"):
+        one(with_span(with_station(box(), "rear", bottom=False), "middle", floor="K"))
+
+
+def test_a_hoop_stands_on_the_upper_rails_with_its_stays() -> None:
+    hoop = Hoop("main hoop", "front", 0.9, 0.4, 0.1, "rear", "cross")
+    tubes = {**box().tubes, "hoop": round_tube(40, 2)}
+    batch = one(Layout(**{**box().__dict__, "tubes": tubes, "hoops": (hoop,)}))
+    names = batch.skeleton.joints
+    top = batch.xyz[0, names.index("main hoop top right")]
+    assert top == pytest.approx([0.1, 0.2, 0.9])
+    assert sum("main hoop" in name for name in batch.skeleton.member_names) == 7
+    left, right = names.index("main hoop top left"), names.index("main hoop top right")
+    assert batch.skeleton.mirror_joint[left] == right
+
+
+def test_a_sweep_over_meeting_and_flat_bracings_equals_the_layouts_one_by_one() -> None:
+    patterns = ("open", "single", "K", "chevron", "cross")
+    index = np.arange(5)
+    batches, refused = variants(box(bays=4), {"span.middle.sides": Choice(patterns, index)}, 5)
+    assert refused == []
+    found = np.empty(5)
+    for batch in batches:
+        found[batch.rows] = answers(batch, 1).twist
+    alone = [
+        answers(one(with_span(box(bays=4), "middle", left=p, right=p)), 1).twist[0]
+        for p in patterns
+    ]
+    assert found == pytest.approx(alone, rel=1e-9)
+
+
+def test_random_layouts_build_and_solve_or_are_refused_by_name() -> None:
+    rng = np.random.default_rng(11)
+    solved = 0
+    for _ in range(400):
+        try:
+            batch = one(random_layout(rng))
+        except InputError as refused:
+            assert refused.remedy
+            continue
+        found = answers(batch, 1)
+        assert np.isfinite(found.twist[0]) or found.status[0]
+        solved += bool(np.isfinite(found.twist[0]))
+    assert solved > 300

@@ -13,7 +13,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from model.errors import LooseFrame
-from model.frame.layout import Layout, with_station, with_tube
+from model.frame.layout import Layout, with_hoop, with_station, with_tube
 from model.frame.variants import one
 from model.results.detail import examine
 from model.results.twist import PER_DEGREE, answers
@@ -91,8 +91,11 @@ def test_lengths_times_s_give_stiffness_times_s_cubed(seed: int, s: float) -> No
         }
     )
     for station in layout.stations:
-        names = ("width_low", "width_high", "height_low", "height_high")
+        names = ("width_low", "width_high", "height_low", "height_high", "outrigger")
         big = with_station(big, station.name, **{n: getattr(station, n) * s for n in names})
+    for hoop in layout.hoops:
+        names = ("height", "width", "lean")
+        big = with_hoop(big, hoop.name, **{n: getattr(hoop, n) * s for n in names})
     for group, tube in layout.tubes.items():
         big = with_tube(big, group, sizes={k: v * s for k, v in tube.sizes.items()})
     small_k, big_k = (answers(one(frame), 1).twist[0] for frame in (layout, big))
@@ -115,8 +118,9 @@ def test_a_mirrored_frame_is_as_stiff(seed: int) -> None:
     batch = one(random_layout(np.random.default_rng(seed)))
     skeleton = replace(
         batch.skeleton,
-        members=batch.skeleton.mirror_joint[batch.skeleton.members],
         up=batch.skeleton.up * [1, -1, 1],
+        front=batch.skeleton.front[::-1],
+        rear=batch.skeleton.rear[::-1],
     )
-    turned = replace(batch, skeleton=skeleton)
+    turned = replace(batch, skeleton=skeleton, xyz=batch.xyz * [1, -1, 1])
     assert answers(turned, 1).twist[0] == pytest.approx(answers(batch, 1).twist[0], rel=1e-9)
