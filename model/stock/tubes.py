@@ -2,8 +2,14 @@
 
 from __future__ import annotations
 
+import csv
 from collections.abc import Mapping
 from dataclasses import dataclass
+
+from model.errors import InputError
+from model.stock.sections import SHAPES, section_values
+
+_METRES = {"mm": 1e-3, "in": 0.0254}
 
 
 @dataclass(frozen=True)
@@ -15,13 +21,89 @@ class StockSize:
     sizes: Mapping[str, float]
     list_name: str
 
+    @property
+    def area(self) -> float:
+        """Cross-section [m²]."""
+        return float(section_values(self.shape, self.sizes).A)
+
 
 @dataclass(frozen=True)
 class StockList:
-    """A list of sizes of one shape, with the standard it follows."""
+    """A list of sizes of one shape, with the standard it follows.
+
+    name : its short name, such as ``metric-round``. title : what a person reads.
+    """
 
     name: str
+    title: str
     shape: str
     unit: str
     standard: str
     sizes: tuple[StockSize, ...]
+
+    def size(self, label: str) -> StockSize:
+        """The size of that label."""
+        for size in self.sizes:
+            if size.label == label:
+                return size
+        raise InputError("stock", f"{self.name}/{label}", f"use one of: {self._labels()}")
+
+    def _labels(self) -> str:
+        return ", ".join(s.label for s in self.sizes)
+
+
+def parse_stock(name: str, text: str) -> StockList:
+    """A stock list from CSV text.
+
+    The first lines are comments ``# key: value`` for name, shape, unit (mm or in) and standard;
+    then a header with the sizes of the shape, then one size a line.
+
+    Raises
+    ------
+    InputError
+        Names the line and column at fault.
+    """
+    facts: dict[str, str] = {}
+    lines = text.splitlines()
+    body = [(n, line) for n, line in enumerate(lines, 1) if line.strip() and line[0] != "#"]
+    for line in lines:
+        if line.startswith("#") and ":" in line:
+            key, value = line[1:].split(":", 1)
+            facts[key.strip()] = value.strip()
+    shape, unit = facts.get("shape", ""), facts.get("unit", "")
+    if shape not in SHAPES:
+        raise InputError(f"{name}: shape", repr(shape), f"use one of: {', '.join(SHAPES)}")
+    if unit not in _METRES:
+        raise InputError(f"{name}: unit", repr(unit), "use mm or in")
+    if not body:
+        raise InputError(name, "no sizes", f"give a header line: {','.join(SHAPES[shape].sizes)}")
+    header = [h.strip() for h in next(csv.reader([body[0][1]]))]
+    if sorted(header) != sorted(SHAPES[shape].sizes):
+        raise InputError(
+            f"{name} line {body[0][0]}", ",".join(header), f"use {','.join(SHAPES[shape].sizes)}"
+        )
+    sizes = [_size(name, shape, _METRES[unit], header, number, line) for number, line in body[1:]]
+    sizes.sort(key=lambda s: s.area)
+    standard = facts.get("standard", "")
+    return StockList(name, facts.get("name", name), shape, unit, standard, tuple(sizes))
+
+
+def _size(
+    name: str, shape: str, scale: float, header: list[str], number: int, line: str
+) -> StockSize:
+    cells = [c.strip() for c in next(csv.reader([line]))]
+    if len(cells) != len(header):
+        raise InputError(f"{name} line {number}", line, f"give {len(header)} values")
+    values = {}
+    for column, cell in zip(header, cells, strict=True):
+        try:
+            values[column] = float(cell)
+        except ValueError:
+            raise InputError(f"{name} line {number}, {column}", cell, "give a number") from None
+    try:
+        sizes = {n: values[n] * scale for n in SHAPES[shape].sizes}
+        section_values(shape, sizes)
+    except InputError as fault:
+        raise InputError(f"{name} line {number}, {fault.field}", line, fault.remedy) from None
+    label = " x ".join(f"{values[n]:g}" for n in SHAPES[shape].sizes)
+    return StockSize(label, shape, sizes, name)
