@@ -1,4 +1,4 @@
-"""Files a frame can be taken away in: tables as CSV, centre lines as DXF; text or bytes come out."""
+"""Files a frame is taken away in: tables as CSV, centre lines as DXF; text comes out."""
 
 from __future__ import annotations
 
@@ -6,8 +6,8 @@ import csv
 import io
 from collections.abc import Iterable, Sequence
 
-import ezdxf
 import numpy as np
+from ezdxf.filemanagement import new as new_drawing
 
 from model.frame.batch import Batch
 from model.frame.bill import Bill
@@ -108,7 +108,7 @@ def _harmless(value: object) -> object:
 
 def centre_lines_dxf(batch: Batch) -> str:
     """Member centre lines of the first frame as a DXF drawing in millimetres, a layer a group."""
-    document = ezdxf.new("R2010", setup=True)
+    document = new_drawing("R2010", setup=True)
     document.header["$INSUNITS"] = 4  # millimetres
     space = document.modelspace()
     skeleton = batch.skeleton

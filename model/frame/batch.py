@@ -61,7 +61,8 @@ class Batch:
         """(n, members) length of every member between joint centres [m]."""
         i, j = self.skeleton.members.T
         difference = self.xyz[:, j] - self.xyz[:, i]
-        return np.sqrt(np.einsum("nmk,nmk->nm", difference, difference))
+        length: F64 = np.sqrt(np.einsum("nmk,nmk->nm", difference, difference))
+        return length
 
 
 @dataclass(frozen=True)

@@ -143,7 +143,7 @@ def _joints(batch: Batch, here: list[int]) -> tuple[JointRow, ...]:
         for j in skeleton.members[m]:
             meet.setdefault(int(j), []).append(skeleton.member_names[m])
     return tuple(
-        JointRow(skeleton.joints[j], *(float(v) for v in batch.xyz[0, j]), tuple(meet[j]))
+        JointRow(skeleton.joints[j], *batch.xyz[0, j].tolist(), members=tuple(meet[j]))
         for j in sorted(meet)
     )
 

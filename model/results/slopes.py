@@ -154,7 +154,8 @@ def _stepped_track(batch: Batch, path: str) -> NDArray[np.complex128] | None:
     if batch.track is None:
         return None
     step = np.array([path == "track_front", path == "track_rear"]) * 1j * _STEP
-    return batch.track[0] + step
+    stepped: NDArray[np.complex128] = batch.track[0] + step
+    return stepped
 
 
 def _stiffness_slope(detail: Detail, compliance: float) -> float:

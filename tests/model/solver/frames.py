@@ -165,12 +165,14 @@ def _balanced(xyz: F64) -> F64:
 
 
 def twist_and_bend_loads(batch: Batch) -> Loads:
-    """Twist as above; bending: 1 N down on the two lower joints at mid-length (box frames)."""
+    """Twist as above; bending: 1 N down on the two lower joints of the middle ring."""
     four = np.array(corners(batch.skeleton), dtype=np.int32)
     joint = np.concatenate([four, middle(batch.skeleton)]).astype(np.int32)
     value = np.zeros((len(batch), 2, 6))
     value[:, 0, :4] = twist_loads(batch).value[:, 0]
-    value[:, 1] = [0.25, 0.25, 0.25, 0.25, -0.5, -0.5]
+    x = batch.xyz[0, joint, 0]
+    front = (x[4] - x[2]) / (x[0] - x[2]) / 2
+    value[:, 1] = [front, front, 0.5 - front, 0.5 - front, -0.5, -0.5]
     return Loads(joint, np.full(6, 2, dtype=np.int32), value)
 
 

@@ -6,6 +6,7 @@ import subprocess
 import sys
 from dataclasses import replace
 from pathlib import Path
+from typing import Any
 
 import numpy as np
 import pytest
@@ -125,25 +126,25 @@ def test_assembles_the_same_blocks_as_the_plain_twin(seed: int) -> None:
     kernel.take_in(lanes, work, layout, tables, *values, 0, here.stop)
     kernel.assemble(lanes, work, layout, tables)
     vectors = work.reshape(-1, LANES)[:, here]
-    got = vectors[layout.below : layout.diagonal].reshape(-1, 6, 6, here.stop)
+    blocks = vectors[layout.below : layout.diagonal].reshape(-1, 6, 6, here.stop)
     exists = np.flatnonzero(asked.plan.filled == 0)
     scale = np.abs(below).max(axis=(1, 2, 3), keepdims=True)
-    assert (np.abs(got - below) <= ROUNDING * scale)[exists].all()
+    assert (np.abs(blocks - below) <= ROUNDING * scale)[exists].all()
     rows, columns = np.tril_indices(6)
-    got = vectors[layout.diagonal : layout.motion].reshape(-1, 21, here.stop)
+    triangles = vectors[layout.diagonal : layout.motion].reshape(-1, 21, here.stop)
     scale = np.abs(diagonal).max(axis=(1, 2, 3))[:, None, None]
-    assert (np.abs(got - diagonal[:, rows, columns]) <= ROUNDING * scale).all()
+    assert (np.abs(triangles - diagonal[:, rows, columns]) <= ROUNDING * scale).all()
 
 
 @pytest.mark.parametrize(
     ("frame", "tolerance"),
     [(frames.frame_a, ANSWERS), (frames.frame_b, ANSWERS), (frames.frame_c, 1e-12)],
 )
-def test_agrees_with_the_plain_twin_on_the_check_frames(frame, tolerance) -> None:  # type: ignore[no-untyped-def]
+def test_agrees_with_the_plain_twin_on_the_check_frames(frame, tolerance) -> None:
     skeleton, batch = frame()
     batch = frames.varied(batch, 2 * LANES + 3)
     loads, held = frames.twist_loads(batch), frames.held(skeleton)
-    options = {"energy_case": 0, "displacements": True}
+    options: dict[str, Any] = {"energy_case": 0, "displacements": True}
     same(
         solve(batch, loads, held, **options),
         solve(batch, loads, held, plain=True, **options),
@@ -156,7 +157,7 @@ def test_agrees_with_the_plain_twin_on_random_frames(seed: int) -> None:
     batch = random_frame(seed)
     cases = 1 + seed % 4
     loads = balanced_loads(batch, cases)
-    options = {"energy_case": cases - 1, "displacements": True}
+    options: dict[str, Any] = {"energy_case": cases - 1, "displacements": True}
     got = solve(batch, loads, clamp(1), **options)
     assert (got.status == 0).any()
     same(got, solve(batch, loads, clamp(1), plain=True, **options), RANDOM)
@@ -167,6 +168,7 @@ def test_agrees_with_scipys_dense_cholesky_on_random_frames(seed: int) -> None:
     batch = random_frame(100 + seed)
     loads = balanced_loads(batch, 2)
     got = solve(batch, loads, clamp(0), displacements=True)
+    assert got.displacement is not None
     for frame in range(len(batch)):
         if got.status[frame] == 0:
             compliance, u = solve_dense(batch, loads, clamp(0), frame)
@@ -183,7 +185,7 @@ def test_agrees_with_scipys_dense_cholesky_on_random_frames(seed: int) -> None:
         (frames.frame_c, frames.TWIST_C, 5e-4),
     ],
 )
-def test_twist_stiffness_of_the_check_frames(frame, twist, half_last_digit) -> None:  # type: ignore[no-untyped-def]
+def test_twist_stiffness_of_the_check_frames(frame, twist, half_last_digit) -> None:
     skeleton, batch = frame()
     got = solve(batch, frames.twist_loads(batch), frames.held(skeleton)).compliance[0, 0]
     assert np.pi / 180 / got == pytest.approx(twist, abs=half_last_digit)
@@ -245,10 +247,11 @@ def test_bits_do_not_depend_on_lane_or_neighbours() -> None:
 def test_bits_do_not_depend_on_the_number_of_lanes() -> None:
     batch = troubled(40)
     asked = problem(batch, frames.twist_and_bend_loads(batch), frames.held(batch.skeleton), 0)
-    answered = []
+    answered: list[list[np.ndarray]] = []
     for lanes in (4, 8):
         solution = empty_solution(asked, True, False)
         Compiled(asked, solution, lanes).worker()(0, len(batch))
+        assert solution.energy is not None
         answered.append([solution.compliance, solution.status, solution.energy])
     assert equal_bits(answered[0], answered[1])
 
@@ -291,8 +294,7 @@ def test_values_of_absent_members_do_not_matter() -> None:
     other = replace(batch, rigidity=batch.rigidity.copy())
     other.rigidity[:, ring] = 0.0
     assert group != ring
-    a, b = (answers(each) for each in (batch, other))
-    assert equal_bits(a, b)
+    assert equal_bits(answers(batch), answers(other))
 
 
 def test_strided_read_only_and_shared_arrays_are_taken_as_they_are() -> None:
@@ -306,7 +308,7 @@ def test_strided_read_only_and_shared_arrays_are_taken_as_they_are() -> None:
 
 
 def test_an_error_in_a_thread_reaches_the_caller() -> None:
-    def make_worker():  # type: ignore[no-untyped-def]
+    def make_worker():
         def work(first: int, last: int) -> None:
             if first == 30:
                 raise ZeroDivisionError("frame 30")

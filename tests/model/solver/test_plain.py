@@ -21,7 +21,7 @@ SHARES_C = [0.9661, 0.0235, 0.0099, 0.0005, 0.0]
 GROUPS_C = [0.0440, 0.0482, 0.0808, 0.2858, 0.1283, 0.2855, 0.1274]
 
 
-def solved(batch: Batch, **options: object):  # type: ignore[no-untyped-def]
+def solved(batch: Batch, **options: object):
     return solve(
         batch,
         frames.twist_loads(batch),
@@ -40,7 +40,7 @@ def solved(batch: Batch, **options: object):  # type: ignore[no-untyped-def]
         (frames.frame_c, frames.TWIST_C, 5e-4),
     ],
 )
-def test_twist_stiffness_of_the_check_frames(frame, twist, half_last_digit) -> None:  # type: ignore[no-untyped-def]
+def test_twist_stiffness_of_the_check_frames(frame, twist, half_last_digit) -> None:
     _, batch = frame()
     assert TO_DEGREES / solved(batch).compliance[0, 0] == pytest.approx(twist, abs=half_last_digit)
 
@@ -49,7 +49,7 @@ def test_twist_stiffness_of_the_check_frames(frame, twist, half_last_digit) -> N
     ("frame", "bend", "half_last_digit"),
     [(frames.frame_b, frames.BEND_B, 5e-4), (frames.frame_c, frames.BEND_C, 5e-3)],
 )
-def test_bending_stiffness_of_the_check_frames(frame, bend, half_last_digit) -> None:  # type: ignore[no-untyped-def]
+def test_bending_stiffness_of_the_check_frames(frame, bend, half_last_digit) -> None:
     skeleton, batch = frame()
     loads = frames.twist_and_bend_loads(batch)
     got = solve(batch, loads, frames.held(skeleton), plain=True)
@@ -59,7 +59,7 @@ def test_bending_stiffness_of_the_check_frames(frame, bend, half_last_digit) -> 
 @pytest.mark.parametrize(
     ("frame", "shares"), [(frames.frame_b, SHARES_B), (frames.frame_c, SHARES_C)]
 )
-def test_energy_shares_of_the_check_frames(frame, shares) -> None:  # type: ignore[no-untyped-def]
+def test_energy_shares_of_the_check_frames(frame, shares) -> None:
     _, batch = frame()
     energy = solved(batch).energy[0]
     np.testing.assert_allclose(energy.sum(axis=0) / energy.sum(), shares, atol=5e-5)
@@ -71,7 +71,7 @@ def test_energy_shares_of_the_groups_of_c() -> None:
 
 
 @pytest.mark.parametrize("frame", [frames.frame_a, frames.frame_b, frames.frame_c])
-def test_energy_is_half_the_work_of_the_forces(frame) -> None:  # type: ignore[no-untyped-def]
+def test_energy_is_half_the_work_of_the_forces(frame) -> None:
     answer = solved(frames.varied(frame()[1], 5))
     work = answer.compliance[:, 0] / 2
     np.testing.assert_allclose(answer.energy.sum(axis=(1, 2)), work, rtol=1e-10)
@@ -86,7 +86,7 @@ def test_agrees_with_scipys_dense_cholesky() -> None:
     batch.present[1, 20:24] = False
     loads = frames.twist_and_bend_loads(batch)
     got = solve(batch, loads, frames.held(skeleton), displacements=True, plain=True)
-    assert (got.status == 0).all()
+    assert (got.status == 0).all() and got.displacement is not None
     for frame in range(4):
         compliance, u = solve_dense(batch, loads, frames.held(skeleton), frame)
         np.testing.assert_allclose(got.compliance[frame], compliance, rtol=1e-10)
