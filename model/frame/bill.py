@@ -143,9 +143,14 @@ def _joints(batch: Batch, here: list[int]) -> tuple[JointRow, ...]:
         for j in skeleton.members[m]:
             meet.setdefault(int(j), []).append(skeleton.member_names[m])
     return tuple(
-        JointRow(skeleton.joints[j], *batch.xyz[0, j].tolist(), members=tuple(meet[j]))
+        JointRow(skeleton.joints[j], *_place(batch, j), tuple(meet[j]))
         for j in sorted(meet)
     )
+
+
+def _place(batch: Batch, joint: int) -> tuple[float, float, float]:
+    x, y, z = batch.xyz[0, joint].tolist()
+    return x, y, z
 
 
 def _stock(
