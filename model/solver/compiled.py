@@ -7,7 +7,7 @@ from __future__ import annotations
 import threading
 from collections.abc import Callable
 
-import llvmlite.binding as llvm  # type: ignore[import-untyped]
+import llvmlite.binding as llvm
 import numpy as np
 from numba import types
 

@@ -90,10 +90,10 @@ def problem(batch: Batch, loads: Loads, gauge: I32, energy_case: int | None) -> 
     joint = np.ascontiguousarray(loads.joint, dtype=np.int32)
     held = np.ascontiguousarray(gauge, dtype=np.int32).reshape(-1, 2)
     for where in (joint, held[:, 0]):
-        if where.size and not (0 <= where.min() and where.max() < joints):
+        if where.size and not (where.min() >= 0 and where.max() < joints):
             raise ValueError(f"a load or support names a joint outside 0 to {joints - 1}")
     for axis in (loads.direction, held[:, 1]):
-        if axis.size and not (0 <= axis.min() and axis.max() < 6):
+        if axis.size and not (axis.min() >= 0 and axis.max() < 6):
             raise ValueError("a load or support has a direction outside 0 to 5")
     return Problem(
         skeleton=skeleton,

@@ -106,7 +106,7 @@ def in_blocks(
             worker = make_worker()
             while not failures and (turn := next(ticket)) < len(starts):
                 worker(starts[turn], min(starts[turn] + block, n))
-        except BaseException as failure:  # noqa: BLE001 - handed to the caller below
+        except BaseException as failure:  # handed to the caller below
             failures.append(failure)
 
     crew = [threading.Thread(target=work) for _ in range(min(threads, len(starts)) - 1)]

@@ -32,7 +32,7 @@ from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from typing import Any
 
-from llvmlite import ir  # type: ignore[import-untyped]
+from llvmlite import ir
 from numba.core import cgutils, types
 from numba.extending import intrinsic
 
