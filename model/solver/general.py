@@ -35,10 +35,7 @@ SETTLED = 1e-15
 """Refinement stops when a correction is below this part of the answer."""
 
 SHIFT = 1e-15
-"""Added to the diagonal of the scaled matrix, so that a mechanism can be factored and then named."""
-
-SPINS = 5
-"""How often parts that spin between pinned ends are looked for."""
+"""Added to the diagonal of the scaled matrix; a mechanism can then be factored, and named."""
 
 Extended = beam.Array
 
@@ -101,13 +98,14 @@ def factor(frame: Frame) -> Factored:
     matrices = member_matrices(frame)
     stiffness = assemble(frame, matrices)
     idle = idle_rotations(frame, matrices)
-    for _ in range(SPINS):
+    while True:
         factored = _factor(frame, stiffness, idle)
-        spins = loose.spins_or_refuse(frame, factored.free, factored.scale, factored.solve)
+        spins = loose.spins_or_refuse(
+            frame, stiffness + idle.grounding(), factored.free, factored.scale, factored.solve
+        )
         if spins is None:
             return factored
         idle = idle.with_more(*spins)
-    return factored
 
 
 def _factor(frame: Frame, stiffness: sp.csc_matrix, idle: Idle) -> Factored:

@@ -12,18 +12,21 @@ from collections.abc import Callable
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.sparse import coo_matrix
+from scipy.sparse import coo_matrix, csc_matrix
 from scipy.sparse.csgraph import connected_components
 
 from model.errors import LooseFrame
 from model.frame.skeleton import F64
 from model.solver import beam
-from model.solver.structure import DIRECTIONS, RELEASED, BoolArray, Frame, Idle
+from model.solver.structure import DIRECTIONS, RELEASED, UNHELD, BoolArray, Frame, Idle
 
 STRAINLESS = 1e-5
 """A motion is free when it strains every member less than this part of what it turns."""
 
 ITERATIONS = 5
+NOTHING = 1e-11
+"""Rotations with less than this part of the largest rotational stiffness have none."""
+
 STILL = 1e-6
 """Parts that move less than this, against the largest motion, are at rest."""
 
@@ -61,16 +64,21 @@ def check_idle_loads(frame: Frame, idle: Idle) -> None:
 
 
 def spins_or_refuse(
-    frame: Frame, free: BoolArray, scale: F64, solve: Callable[[F64], F64]
+    frame: Frame,
+    stiffness: csc_matrix,
+    free: BoolArray,
+    scale: F64,
+    solve: Callable[[F64], F64],
 ) -> tuple[F64, F64] | None:
-    """None when the frame is held; otherwise the parts that spin between pinned ends.
+    """None when the frame is held; otherwise the ways joints turn together between free ends.
 
-    Returns (6J, parts) unit motions and a stiffness each, for ``Idle``.
+    stiffness : (6J, 6J) of the members and of the grounded idle motions.
+    Returns (6J, ways) orthonormal motions and a stiffness each, for ``Idle``.
 
     Raises
     ------
     LooseFrame
-        The motion is more than such a spin.
+        The motion moves joints, or turns the frame as a whole.
     """
     motion = _softest(free, scale, solve)
     if motion is None or _strain(frame, motion) > STRAINLESS:
@@ -78,7 +86,7 @@ def spins_or_refuse(
     move, turn = motion[:, :3], motion[:, 3:]
     size = float(np.ptp(frame.xyz, axis=0).max())
     if np.abs(move).max() <= STILL * np.abs(turn).max() * size:
-        spins = _spins(frame, np.where(frame.held[:, 3:], 0.0, turn))
+        spins = _spins(frame, stiffness, turn)
         if spins is not None:
             return spins
     raise _refusal(frame, motion, size)
@@ -121,23 +129,45 @@ def _strain(frame: Frame, motion: F64) -> float:
     return float(np.abs(deformation).max()) / turning
 
 
-def _spins(frame: Frame, turn: F64) -> tuple[F64, F64] | None:
-    """Parts whose joints only turn, each bounded by pinned ends; None when there is no such."""
-    turning = np.abs(turn).max(axis=1) > STILL * np.abs(turn).max()
-    i, j = frame.members.T
-    boundary = turning[i] != turning[j]
-    free_twist = frame.ends[:, 1] >= RELEASED
-    if not boundary.any() or not free_twist[boundary].any():
+def _spins(frame: Frame, stiffness: csc_matrix, turn: F64) -> tuple[F64, F64] | None:
+    """All ways in which the turning joints turn without strain; None when no free end turns.
+
+    A motion that moves no joint strains nothing exactly when the rotations alone say so: the
+    stiffness has no negative energy. The rotations that touch one another through members that
+    carry torque or moment form blocks, and each block shows its own ways.
+    """
+    rotation = np.flatnonzero(np.tile([0, 0, 0, 1, 1, 1], len(turn)) * ~frame.held.ravel())
+    block = stiffness[rotation][:, rotation]
+    reference = float(block.diagonal().max())
+    block.data[np.abs(block.data) < UNHELD * reference] = 0.0
+    block.eliminate_zeros()
+    part = connected_components(block, directed=False)[1]
+    turning = np.zeros((len(turn), 6))
+    turning[:, 3:] = np.where(np.abs(turn) > STILL * np.abs(turn).max(), turn, 0.0)
+    ways = []
+    for p in np.unique(part[turning.ravel()[rotation] != 0]):
+        mine = rotation[part == p]
+        alone = np.zeros(turning.size)
+        alone[mine] = turning.ravel()[mine]
+        if not _turns_at_a_free_end(frame, alone.reshape(-1, 6)):
+            return None
+        value, vector = np.linalg.eigh(block[part == p][:, part == p].toarray())
+        still = value <= NOTHING * reference
+        way = np.zeros((turning.size, int(still.sum())))
+        way[mine] = vector[:, still]
+        ways.append(way)
+    vectors = np.concatenate(ways, axis=1)
+    if not vectors.shape[1]:
         return None
-    count, part = _pieces(frame, turning[i] & turning[j])
-    touched = np.unique(part[np.concatenate([i, j])][turning[np.concatenate([i, j])]])
-    near = float((frame.rigidity[:, 3] / frame.lengths).max())
-    vectors = np.zeros((len(frame.joints), 6, len(touched)))
-    for k, p in enumerate(touched):
-        mine = turning & (part == p)
-        vectors[mine, 3:, k] = turn[mine]
-        vectors[:, :, k] /= np.linalg.norm(vectors[:, :, k])
-    return vectors.reshape(-1, len(touched)), np.full(len(touched), near)
+    return vectors, np.full(vectors.shape[1], reference)
+
+
+def _turns_at_a_free_end(frame: Frame, motion: F64) -> bool:
+    xi, xj, up, _, ends = frame.geometry()
+    modes = beam.natural_modes(beam.member_axes(xi, xj, up), beam.lengths(xi, xj))
+    both = np.concatenate([motion[frame.members[:, end]] for end in (0, 1)], axis=1)
+    deformation = np.abs(np.einsum("map,mp->ma", modes, both))[ends >= RELEASED]
+    return bool(deformation.max(initial=0.0) > STILL * np.abs(motion).max())
 
 
 def _refusal(frame: Frame, motion: F64, size: float) -> LooseFrame:
