@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -86,7 +85,7 @@ class Input:
             return np.array(self.options, dtype=np.float64)[index] * UNITS.get(self.unit, 1.0)
         return Choice(self.options, index)
 
-    def shown(self, unit_values: ArrayLike) -> Sequence[Any]:
+    def shown(self, unit_values: ArrayLike) -> NDArray[Any]:
         """What the results table shows: numbers in the file's unit, or option labels."""
         if not self.is_choice:
             return self.numbers(unit_values)

@@ -243,13 +243,10 @@ def _check_corners(study: Study) -> None:
         variants_of = np.full((2 * k + 1, k), 0.5)
         for n in range(k):
             variants_of[2 * n, n], variants_of[2 * n + 1, n] = 0.0, 1.0
-    try:
-        _, refused = variants(study.layout, {}, 1)
-        if refused:
-            raise refused[0].as_error()
-        _, refused = variants(study.layout, study.columns(variants_of), len(variants_of))
-    except InputError as fault:
-        raise InputError(fault.field, fault.given, fault.remedy) from None
+    _, refused = variants(study.layout, {}, 1)
+    if refused:
+        raise refused[0].as_error()
+    _, refused = variants(study.layout, study.columns(variants_of), len(variants_of))
     for fault in refused:
         number, end = divmod(fault.row, 2)
         if number < len(study.inputs):
