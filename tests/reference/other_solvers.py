@@ -2,14 +2,9 @@
 
 from __future__ import annotations
 
-import ctypes
-import importlib.util
-import sys
-from pathlib import Path
 from types import ModuleType
 
 import numpy as np
-import pytest
 
 from model.frame.batch import PINNED
 from model.solver.beam import member_axes
@@ -17,19 +12,6 @@ from model.solver.structure import Frame
 
 E, G = 205e9, 205e9 / 2.6
 """Any moduli do for statics: the libraries get area = EA / E and so on."""
-
-
-def opensees() -> ModuleType:
-    """OpenSeesPy, or skip; on Linux its own BLAS is loaded first, as it may not find one."""
-    if sys.platform.startswith("linux"):
-        found = importlib.util.find_spec("openseespylinux")
-        if found is not None and found.origin is not None:
-            folder = Path(found.origin).parent / "lib"
-            for name in ("quadmath.so.0", "gfortran.so.4", "gomp.so.1", "blas.so.3", "lapack.so.3"):
-                if (folder / f"lib{name}").exists():
-                    ctypes.CDLL(str(folder / f"lib{name}"), mode=ctypes.RTLD_GLOBAL)
-    module: ModuleType = pytest.importorskip("openseespy.opensees", exc_type=Exception)
-    return module
 
 
 def build_in_opensees(ops: ModuleType, frame: Frame) -> None:
@@ -81,12 +63,11 @@ def frequencies_with_opensees(ops: ModuleType, frame: Frame, count: int) -> np.n
     return np.sqrt(ops.eigen("-fullGenLapack", count)) / (2 * np.pi)
 
 
-def solve_with_pynite(frame: Frame) -> tuple[np.ndarray, np.ndarray]:
+def solve_with_pynite(pynite: ModuleType, frame: Frame) -> tuple[np.ndarray, np.ndarray]:
     """Displacements (cases, joints, 6) and local end forces (cases, members, 2, 6).
 
     The library's local axes are ours after a turn about the member, which is given to it.
     """
-    pynite = pytest.importorskip("Pynite")
     model = pynite.FEModel3D()
     model.add_material("m", E, G, 0.3, 7850.0)
     for name, place, held in zip(frame.joints, frame.xyz, frame.held, strict=True):

@@ -335,8 +335,8 @@ def test_both_diagonals_in_every_panel():
     for k in range(1, 9):
         for a in range(4):
             near, far = a, (a + 1) % 4
-            both = {(4 * (k - 1) + near, 4 * k + far), (4 * (k - 1) + far, 4 * k + near)}
-            missing += list(both - {face(k, a)})
+            crossed = {(4 * (k - 1) + near, 4 * k + far), (4 * (k - 1) + far, 4 * k + near)}
+            missing += list(crossed - {face(k, a)})
     both = with_members(frame, missing, "b")
     assert stiffness(both) == pytest.approx(24438.1, abs=0.051)
 
@@ -375,7 +375,7 @@ def test_more_bays_are_not_always_stiffer(bays, expected, mass):
 # ---- flexible joints --------------------------------------------------------------------------
 
 FIXITY = [0.95, 0.9, 0.8, 0.6, 0.4, 0.2, 0.0]
-SOFTER = {
+SOFTER: dict[str, list[float | None]] = {
     "B": [0.9419, 0.8886, 0.7939, 0.6386, 0.5093, 0.3759, None],
     "C": [0.9979, 0.9960, 0.9926, 0.9868, 0.9819, 0.9771, 0.9659],
 }

@@ -14,16 +14,10 @@ from model.solver import general, vibration
 from tests.model.solver.random_frames import random_frame
 from tests.reference.other_solvers import (
     frequencies_with_opensees,
-    opensees,
     solve_with_opensees,
     solve_with_pynite,
     worst_difference,
 )
-
-
-@pytest.fixture(scope="module")
-def ops():
-    return opensees()
 
 
 def compare(frames, solver) -> float:
@@ -40,22 +34,22 @@ def compare(frames, solver) -> float:
 
 
 @pytest.mark.parametrize("shear", [True, False])
-def test_150_random_frames_agree_with_opensees(ops, shear):
+def test_150_random_frames_agree_with_opensees(opensees, shear):
     frames = (random_frame(seed, shear=shear) for seed in range(150))
-    worst = compare(frames, lambda frame: solve_with_opensees(ops, frame))
+    worst = compare(frames, lambda frame: solve_with_opensees(opensees, frame))
     print(f"worst relative difference from OpenSeesPy, shear {shear}: {worst:.1e}")
     assert worst < 1e-8, f"worst relative difference {worst:.1e}"
 
 
-def test_30_random_frames_with_pinned_ends_agree_with_pynite():
+def test_30_random_frames_with_pinned_ends_agree_with_pynite(pynite):
     frames = (random_frame(seed, shear=False, pins=True) for seed in range(30))
-    worst = compare(frames, solve_with_pynite)
+    worst = compare(frames, lambda frame: solve_with_pynite(pynite, frame))
     print(f"worst relative difference from PyNite: {worst:.1e}")
     assert worst < 1e-8, f"worst relative difference {worst:.1e}"
 
 
 @pytest.mark.parametrize("shear", [True, False])
-def test_frequencies_of_random_frames_agree_with_opensees(ops, shear):
+def test_frequencies_of_random_frames_agree_with_opensees(opensees, shear):
     # round tubes, because the library takes J for the polar second moment of the section; its
     # member without shear has no rotary inertia
     worst = 0.0
@@ -63,7 +57,7 @@ def test_frequencies_of_random_frames_agree_with_opensees(ops, shear):
         frame = random_frame(seed, shear=shear, round_tubes=True)
         frame.rotary[:] = shear
         count = min(8, int((~frame.held).sum()))
-        expected = frequencies_with_opensees(ops, frame, count)
+        expected = frequencies_with_opensees(opensees, frame, count)
         got = vibration.modes(frame, count).frequency
         worst = max(worst, float(np.abs(got / expected - 1).max()))
     print(f"worst relative difference of a frequency from OpenSeesPy, shear {shear}: {worst:.1e}")

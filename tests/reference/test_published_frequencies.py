@@ -8,6 +8,7 @@ Frequency and Mode Shape.
 from __future__ import annotations
 
 import json
+from itertools import pairwise
 from pathlib import Path
 
 import numpy as np
@@ -46,7 +47,7 @@ class Mesh:
 
     def run(self, start, end, pieces: int, section: str = "s", material: str = "m") -> None:
         points = np.linspace(start, end, pieces + 1)
-        for a, b in zip(points[:-1], points[1:], strict=True):
+        for a, b in pairwise(points):
             self.members.append(
                 {"from": self.node(a), "to": self.node(b), "section": section, "material": material}
             )
@@ -119,7 +120,7 @@ def off_centre_masses(pieces: int, **section) -> np.ndarray:
     mesh.run(np.zeros(3), tip, pieces)
     mesh.hold(np.zeros(3), ALL)
     for k in (1, 2):
-        arm = tip + [0, p[f"offset{k}_m"], 0]
+        arm = np.array([length, p[f"offset{k}_m"], 0])
         mesh.run(tip, arm, 1, material="stiff")
         mesh.masses[mesh.node(arm)] = p[f"mass{k}_kg"]
     return mesh.frequencies(6)

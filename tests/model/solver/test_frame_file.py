@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import copy
 import json
+from typing import Any
 
 import numpy as np
 import pytest
@@ -17,7 +18,7 @@ from model.solver.frame_file import parse, solve_file
 from model.solver.structure import frame_of
 from tests.model.frame.layouts import box, ladder, random_layout
 
-EXAMPLE = {
+EXAMPLE: dict[str, Any] = {
     "nodes": {"A": [0, 0, 0], "B": [1, 0, 0]},
     "materials": {"steel": {"E": 205e9, "G": 80e9, "density": 7850, "yield": 235e6}},
     "sections": {
@@ -46,7 +47,7 @@ def changed(*path_and_value):
     """The example with one entry changed; ``...`` as value takes the entry away."""
     data = copy.deepcopy(EXAMPLE)
     *path, last, value = path_and_value
-    place = data
+    place: Any = data
     for key in path:
         place = place[key]
     if value is ...:
@@ -256,7 +257,7 @@ def test_a_broken_text_is_refused(text, words):
 
 @pytest.mark.parametrize("modes", [-1, 1.5, True, "3"])
 def test_a_strange_number_of_modes_is_refused(modes):
-    with pytest.raises(InputError, match="modes = .*whole number"):
+    with pytest.raises(InputError, match=r"modes = .*whole number"):
         solve_file(EXAMPLE, modes)
 
 

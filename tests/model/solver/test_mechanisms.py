@@ -106,7 +106,7 @@ def test_a_simple_beam_spins_about_its_own_axis_unless_held():
 
 
 def test_too_many_supports_are_fine():
-    data = frame(SQUARE, ["AB", "BC", "CD", "DA"], {n: ALL for n in "ABD"}, down("C"))
+    data = frame(SQUARE, ["AB", "BC", "CD", "DA"], dict.fromkeys("ABD", ALL), down("C"))
     stands(data)
 
 
