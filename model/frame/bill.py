@@ -143,8 +143,7 @@ def _joints(batch: Batch, here: list[int]) -> tuple[JointRow, ...]:
         for j in skeleton.members[m]:
             meet.setdefault(int(j), []).append(skeleton.member_names[m])
     return tuple(
-        JointRow(skeleton.joints[j], *_place(batch, j), tuple(meet[j]))
-        for j in sorted(meet)
+        JointRow(skeleton.joints[j], *_place(batch, j), tuple(meet[j])) for j in sorted(meet)
     )
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, replace
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -73,7 +74,35 @@ def scaffold(
     InputError
         Braces would meet in the middle of a member that is not there.
     """
-    builder = _Builder(layout, bays, allowed or {})
+    rules = frozenset((allowed or {}).items())
+    return _scaffold(_Arrangement(layout), tuple(bays), rules)
+
+
+class _Arrangement:
+    """A layout seen by what its scaffold depends on, so that equal ones share one."""
+
+    def __init__(self, layout: Layout) -> None:
+        self.layout = layout
+        self._key = (
+            layout.stations,
+            layout.spans,
+            layout.hoops,
+            tuple(layout.tubes),
+            (layout.front_axle, layout.rear_axle, layout.front_mount, layout.rear_mount),
+        )
+
+    def __eq__(self, other: object) -> bool:
+        return isinstance(other, _Arrangement) and self._key == other._key
+
+    def __hash__(self) -> int:
+        return hash(self._key)
+
+
+@lru_cache(maxsize=512)
+def _scaffold(
+    arrangement: _Arrangement, bays: tuple[int, ...], rules: frozenset[tuple[str, frozenset[str]]]
+) -> Scaffold:
+    builder = _Builder(arrangement.layout, bays, dict(rules))
     builder.lay_rings()
     builder.note_meeting_points()
     builder.place_rings()

@@ -1,0 +1,155 @@
+"""The frames that no other frame beats, the knee among them, and how far another one is off."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+import pandas as pd
+from numpy.typing import NDArray
+
+from model.errors import InputError
+from sweeps.outputs import OUTPUTS
+
+F64 = NDArray[np.float64]
+
+
+def unbeaten(costs: F64) -> NDArray[np.int64]:
+    """Rows that no other row beats: none is as good in every column and better in one.
+
+    Parameters
+    ----------
+    costs : (n, columns), less is better; rows with NaN are beaten. Of equal rows the first stays.
+
+    Returns
+    -------
+    Row numbers, by the first column ascending.
+
+    Notes
+    -----
+    Two columns by one sort, n log n; more columns by a sweep over the sorted rows against the
+    unbeaten ones so far.
+    """
+    sound = np.flatnonzero(np.isfinite(costs).all(axis=1))
+    kept = costs[sound]
+    order = np.lexsort((*kept.T[::-1],)) if len(kept) else np.empty(0, dtype=np.int64)
+    ranked = kept[order]
+    if not len(ranked):
+        return np.empty(0, dtype=np.int64)
+    if ranked.shape[1] == 2:
+        best = np.minimum.accumulate(ranked[:, 1])
+        first = np.concatenate([[True], ranked[1:, 1] < best[:-1]])
+        return sound[order[first]]
+    front = np.empty_like(ranked)
+    members: list[int] = []
+    for k, row in enumerate(ranked):
+        seen = front[: len(members)]
+        if not (seen <= row).all(axis=1).any():
+            front[len(members)] = row
+            members.append(k)
+    return sound[order[members]]
+
+
+@dataclass(frozen=True, eq=False)
+class Front:
+    """The frames of a table that no other one beats.
+
+    rows : the table's rows, lightest first. knee : frame number of the knee.
+    counted : frames that meet the limits; considered : all frames that were solved.
+    """
+
+    rows: pd.DataFrame
+    x: str
+    y: str
+    knee: int | None
+    counted: int
+    considered: int
+
+
+def front(
+    table: pd.DataFrame,
+    x: str = "mass_kg",
+    y: str = "twist_Nm_per_deg",
+    min_twist: float | None = None,
+    max_mass: float | None = None,
+    limits: Mapping[str, tuple[float | None, float | None]] | None = None,
+) -> Front:
+    """The front of two result columns within limits.
+
+    limits : least and greatest value by column, on top of ``min_twist`` [N·m/deg] and
+        ``max_mass`` [kg].
+
+    Raises
+    ------
+    InputError
+        No such column.
+    """
+    bounds = dict(limits or {})
+    if min_twist is not None:
+        bounds["twist_Nm_per_deg"] = (min_twist, None)
+    if max_mass is not None:
+        bounds["mass_kg"] = (None, max_mass)
+    for column in (x, y, *bounds):
+        if column not in table.columns:
+            raise InputError("column", repr(column), f"use one of: {', '.join(OUTPUTS)}")
+    solved = table[np.isfinite(table["twist_Nm_per_deg"])]
+    inside = np.ones(len(solved), dtype=bool)
+    for column, (least, most) in bounds.items():
+        values = solved[column].to_numpy()
+        inside &= (values >= least) if least is not None else True
+        inside &= (values <= most) if most is not None else True
+    kept = solved[inside]
+    rows = kept.iloc[unbeaten(costs(kept, (x, y)))].reset_index(drop=True)
+    return Front(rows, x, y, knee(rows, x, y), len(kept), len(solved))
+
+
+def costs(table: pd.DataFrame, columns: Sequence[str]) -> F64:
+    """(n, columns) values with the sign turned where more is better."""
+    found = np.empty((len(table), len(columns)))
+    for k, column in enumerate(columns):
+        sign = -1.0 if column in OUTPUTS and OUTPUTS[column].more_is_better else 1.0
+        found[:, k] = sign * table[column].to_numpy(np.float64)
+    return found
+
+
+def knee(rows: pd.DataFrame, x: str, y: str) -> int | None:
+    """Frame number of the front's knee: farthest from the chord between its ends.
+
+    Both columns scaled to the front's range; the bend angle's cousin of Das, "On characterizing
+    the knee of the Pareto curve" (Structural Optimization 18, 1999). None below three frames.
+    """
+    if len(rows) < 3:
+        return None
+    points = costs(rows, (x, y))
+    span = np.ptp(points, axis=0)
+    if (span == 0).any():
+        return None
+    scaled = (points - points.min(axis=0)) / span
+    away = 1.0 - scaled.sum(axis=1)
+    best = int(np.argmax(away))
+    return int(rows["frame"].iloc[best]) if away[best] > 0 else None
+
+
+@dataclass(frozen=True)
+class Distance:
+    """How far a frame is from the front.
+
+    lighter : mass [kg] that the front saves at no less twist stiffness; 0 on the front.
+    stiffer : twist stiffness [N·m/deg] that the front adds at no more mass.
+    """
+
+    lighter: float
+    stiffer: float
+
+
+def distance(found: Front, frame: pd.Series) -> Distance:
+    """How far a frame of the table is from a front of mass against twist stiffness."""
+    mass = found.rows["mass_kg"].to_numpy()
+    twist = found.rows["twist_Nm_per_deg"].to_numpy()
+    own_mass, own_twist = float(frame["mass_kg"]), float(frame["twist_Nm_per_deg"])
+    as_stiff = mass[twist >= own_twist]
+    as_light = twist[mass <= own_mass]
+    lighter = own_mass - float(as_stiff.min()) if len(as_stiff) else 0.0
+    stiffer = float(as_light.max()) - own_twist if len(as_light) else 0.0
+    return Distance(max(0.0, lighter), max(0.0, stiffer))

@@ -1,0 +1,300 @@
+"""A run is a folder: the study, what was asked, and the solved rows in blocks.
+
+``study.toml`` is the complete input, ``run.json`` says what was asked and solved, and
+``blocks/00000.parquet`` and on hold the rows. A block is written whole to a temporary name and
+renamed, so it is either there or not. Resuming solves the blocks that are missing; doubling the
+samples keeps every block. A file that does not belong is set aside under another name, never
+trusted and never deleted.
+"""
+
+from __future__ import annotations
+
+import hashlib
+import json
+import os
+from collections.abc import Iterator
+from contextlib import contextmanager
+from dataclasses import dataclass, replace
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import pandas as pd
+
+from model.errors import DesignError, InputError
+from sweeps.sampling import Design
+from sweeps.study import Study
+from sweeps.study_file import parse_study
+from sweeps.study_text import write_study
+
+FORMAT = 1
+"""Version of the folder's contents; runs of another version are not read."""
+
+BLOCK_ROWS = 16384
+"""A block holds about so many rows: whole base samples, a power of two of them."""
+
+
+class RunError(DesignError):
+    """A run folder cannot be used; the message names the file and the remedy."""
+
+
+@dataclass(frozen=True)
+class Run:
+    """A run on disk.
+
+    folder : where it lies. study : what is asked; its samples are what the run aims for.
+    """
+
+    folder: Path
+    study: Study
+    second_order: bool
+
+    @property
+    def name(self) -> str:
+        """Name of the folder."""
+        return self.folder.name
+
+    @property
+    def design(self) -> Design:
+        """The rows that the run is made of."""
+        study = self.study
+        return Design(len(study.inputs), study.samples, self.second_order, study.seed)
+
+    @property
+    def samples_per_block(self) -> int:
+        """Base samples in one block."""
+        most = max(1, BLOCK_ROWS // self.design.rows_per_sample)
+        return int(min(2 ** int(np.log2(most)), self.study.samples))
+
+    @property
+    def blocks(self) -> range:
+        """Numbers of all blocks."""
+        return range(self.study.samples // self.samples_per_block)
+
+    def rows_of(self, block: int) -> slice:
+        """Rows of the design that a block holds."""
+        rows = self.samples_per_block * self.design.rows_per_sample
+        return slice(block * rows, (block + 1) * rows)
+
+    def path_of(self, block: int) -> Path:
+        """File of a block."""
+        return self.folder / "blocks" / f"{block:05d}.parquet"
+
+    def missing(self) -> list[int]:
+        """Blocks that are not solved yet. Looks at every block's head; sets bad ones aside."""
+        return [block for block in self.blocks if not self._sound(block)]
+
+    @property
+    def rows_solved(self) -> int:
+        """Rows in the blocks on disk."""
+        rows = self.samples_per_block * self.design.rows_per_sample
+        return rows * sum(self.path_of(block).exists() for block in self.blocks)
+
+    @property
+    def complete(self) -> bool:
+        """Whether every block is there."""
+        return all(self.path_of(block).exists() for block in self.blocks)
+
+    def write_block(self, block: int, rows: pd.DataFrame) -> None:
+        """Put a solved block on disk, whole or not at all."""
+        path = self.path_of(block)
+        with _naming(path):
+            scratch = path.with_name(f"{path.name}.part{os.getpid()}")
+            rows.to_parquet(scratch, index=False)
+            os.replace(scratch, path)
+
+    def table(self) -> pd.DataFrame:
+        """All solved rows, in the order of the design."""
+        parts = [
+            pd.read_parquet(self.path_of(block))
+            for block in self.blocks
+            if self.path_of(block).exists() and self._sound(block)
+        ]
+        if not parts:
+            raise RunError(f"{self.folder}: no frame is solved yet; run or resume the sweep")
+        return pd.concat(parts, ignore_index=True)
+
+    def _sound(self, block: int) -> bool:
+        path = self.path_of(block)
+        if not path.exists():
+            return False
+        import pyarrow.parquet as pq
+
+        expected = self.rows_of(block)
+        try:
+            with pq.ParquetFile(path) as file:
+                count = file.metadata.num_rows
+                first = file.read_row_group(0, columns=["frame"]).column(0)[0].as_py()
+            good = count == expected.stop - expected.start and first == expected.start
+        except Exception:
+            good = False
+        if not good:
+            set_aside(path)
+        return bool(good)
+
+    def note(self, **facts: Any) -> None:
+        """Write facts (counts, timings) beside what was asked into ``run.json``."""
+        _write_json(self.folder / "run.json", {**_read_json(self.folder / "run.json"), **facts})
+
+    def facts(self) -> dict[str, Any]:
+        """What ``run.json`` says."""
+        return _read_json(self.folder / "run.json")
+
+
+def digest(study: Study, second_order: bool) -> str:
+    """What two runs must share to be the same run, whatever their sample counts."""
+    asked = write_study(replace(study, samples=2))
+    return hashlib.sha256(f"{FORMAT} {second_order}\n{asked}".encode()).hexdigest()[:16]
+
+
+def open_run(folder: str | Path) -> Run:
+    """A run that is already on disk."""
+    folder = Path(folder)
+    facts_path, study_path = folder / "run.json", folder / "study.toml"
+    if not folder.is_dir() or not facts_path.exists() or not study_path.exists():
+        raise InputError("FOLDER", repr(str(folder)), "name a folder that a sweep was run into")
+    facts = _read_json(facts_path)
+    if facts.get("format") != FORMAT:
+        raise RunError(
+            f"{facts_path}: written by another version (format {facts.get('format')!r}, "
+            f"this one reads {FORMAT}); run the sweep into a new folder"
+        )
+    with _naming(study_path):
+        study = parse_study(study_path.read_text(encoding="utf-8"))
+    run = Run(folder, study, bool(facts["second_order"]))
+    if facts.get("digest") != digest(study, run.second_order):
+        raise RunError(
+            f"{study_path}: changed since the run was made; restore it, or run the changed study "
+            "into a new folder"
+        )
+    return run
+
+
+def prepare(study: Study, folder: str | Path, second_order: bool = True) -> Run:
+    """A run folder for a study: made, or opened again to resume or extend it.
+
+    Raises
+    ------
+    RunError
+        The folder holds something else, or a run of another study; nothing is touched.
+    """
+    folder = Path(folder)
+    Design(len(study.inputs), study.samples, second_order, study.seed)
+    if (folder / "run.json").exists():
+        run = open_run(folder)
+        if digest(study, second_order) != digest(run.study, run.second_order):
+            raise RunError(
+                f"{folder}: holds a run of another study; choose a new folder, or resume with the "
+                "study.toml in it"
+            )
+        if study.samples > run.study.samples:
+            if study.samples % run.samples_per_block:
+                raise RunError(f"{folder}: use a multiple of {run.samples_per_block} samples")
+            with locked(folder):
+                return _write_head(replace(run, study=study), run.samples_per_block)
+        return run
+    if folder.exists() and any(folder.iterdir()):
+        raise RunError(f"{folder}: holds other files; choose a new or empty folder")
+    with _naming(folder):
+        (folder / "blocks").mkdir(parents=True, exist_ok=True)
+    return _write_head(Run(folder, study, second_order), None)
+
+
+def _write_head(run: Run, keep: int | None) -> Run:
+    """Write study and run file; ``keep`` is the block size that solved blocks already have."""
+    if keep is not None and run.samples_per_block != keep:
+        raise RunError(f"{run.folder}: too few samples to extend; sweep into a new folder")
+    with _naming(run.folder):
+        _write_text(run.folder / "study.toml", write_study(run.study))
+        facts = {
+            "format": FORMAT,
+            "digest": digest(run.study, run.second_order),
+            "seed": run.study.seed,
+            "samples": run.study.samples,
+            "second_order": run.second_order,
+            "rows": run.design.rows,
+            "samples_per_block": run.samples_per_block,
+        }
+        _write_json(run.folder / "run.json", facts)
+    return run
+
+
+@contextmanager
+def locked(folder: Path) -> Iterator[None]:
+    """Hold a run folder for this process; a second one is told who has it."""
+    path = folder / "in-use"
+    mine = str(os.getpid())
+    with _naming(path):
+        while True:
+            try:
+                handle = os.open(path, os.O_CREAT | os.O_EXCL | os.O_WRONLY)
+                break
+            except FileExistsError:
+                holder = path.read_text(encoding="utf-8").strip()
+                if holder and _alive(holder):
+                    raise RunError(
+                        f"{folder}: in use by process {holder}; wait for it or stop it"
+                    ) from None
+                set_aside(path)
+        os.write(handle, mine.encode())
+        os.close(handle)
+    try:
+        yield
+    finally:
+        path.unlink(missing_ok=True)
+
+
+def _alive(pid: str) -> bool:
+    if not pid.isdigit():
+        return False
+    try:
+        os.kill(int(pid), 0)
+    except ProcessLookupError:
+        return False
+    except (PermissionError, OSError):
+        return True
+    return True
+
+
+def set_aside(path: Path) -> Path:
+    """Give a file that cannot be trusted another name; says which."""
+    for number in range(1, 1000):
+        other = path.with_name(f"{path.name}.set-aside-{number}")
+        if not other.exists():
+            os.replace(path, other)
+            return other
+    raise RunError(f"{path}: too many set-aside files; look at them and clear them away")
+
+
+@contextmanager
+def _naming(path: Path) -> Iterator[None]:
+    """Say which file an operating-system fault is about, and what would do."""
+    try:
+        yield
+    except PermissionError as fault:
+        raise RunError(f"{path}: may not be written; choose a folder of your own") from fault
+    except OSError as fault:
+        import errno
+
+        remedy = "free some space and resume" if fault.errno == errno.ENOSPC else "see the folder"
+        raise RunError(f"{path}: {fault.strerror or fault}; {remedy}") from fault
+
+
+def _write_text(path: Path, text: str) -> None:
+    scratch = path.with_name(f"{path.name}.part{os.getpid()}")
+    scratch.write_text(text, encoding="utf-8")
+    os.replace(scratch, path)
+
+
+def _write_json(path: Path, facts: dict[str, Any]) -> None:
+    _write_text(path, json.dumps(facts, indent=1) + "\n")
+
+
+def _read_json(path: Path) -> dict[str, Any]:
+    try:
+        found = json.loads(path.read_text(encoding="utf-8"))
+    except (OSError, ValueError):
+        raise RunError(f"{path}: cannot be read; run the sweep into a new folder") from None
+    if not isinstance(found, dict):
+        raise RunError(f"{path}: is no run file; run the sweep into a new folder")
+    return found
