@@ -14,6 +14,9 @@ import numpy as np
 from model.errors import InputError
 from model.frame.skeleton import F64
 
+LARGEST = 1e30
+"""Numbers beyond this, or below one over this, are no sizes of anything that is built."""
+
 _ABSENT = object()
 
 
@@ -58,14 +61,16 @@ class Entry:
     def number(self, what: str = "a number") -> float:
         """A finite number."""
         ok = isinstance(self.value, (int, float)) and not isinstance(self.value, bool)
-        if not ok or not math.isfinite(self.value):
+        if not ok or self.value != self.value or abs(self.value) == math.inf:
             raise self._wrong(f"give {what}")
+        if abs(self.value) > LARGEST:
+            raise self._wrong(f"use a number of at most {LARGEST:g}")
         return float(self.value)
 
     def positive(self, unit: str) -> float:
         """A finite number above 0."""
         value = self.number(f"a number above 0 in {unit}")
-        if not value > 0:
+        if not value > 1 / LARGEST:
             raise self._wrong(f"use a number above 0 in {unit}")
         return value
 

@@ -30,9 +30,13 @@ from model.solver.structure import (
     member_matrices,
 )
 
+EXTENDED: type = np.longdouble
+"""Eighty bits on most processors; where it is no more than a double, some digits fewer."""
+
 REFINEMENTS = 12
-SETTLED = 1e-15
-"""Refinement stops when a correction is below this part of the answer."""
+SETTLED, GOOD = 1e-15, 1e-8
+"""Refinement stops when a correction is below this part of the answer, or shrinks no more; an
+answer whose last correction is above the second is no answer."""
 
 SHIFT = 1e-15
 """Added to the diagonal of the scaled matrix; a mechanism can then be factored, and named."""
@@ -88,8 +92,21 @@ def solve(frame: Frame) -> Answer:
     factored = factor(frame)
     loose.check_idle_loads(frame, factored.idle)
     displacement = np.stack([_refined(frame, factored, load) for load in frame.loads]) \
-        if frame.cases else np.zeros((0, len(frame.joints), 6), dtype=np.longdouble)  # fmt: skip
+        if frame.cases else np.zeros((0, len(frame.joints), 6), dtype=EXTENDED)  # fmt: skip
     return _answer(frame, displacement)
+
+
+def unlike(frame: Frame) -> InputError:
+    """The members are too unlike for sixteen digits; names the extremes."""
+    rigidity = np.stack([frame.rigidity[:, k] / frame.lengths for k in range(4)], axis=1)
+    soft, stiff = (
+        frame.member_names[int(at)] for at in (rigidity.min(1).argmin(), rigidity.max(1).argmax())
+    )
+    return InputError(
+        "stiffness of the members",
+        f"{rigidity.min():.1e} ({soft}) to {rigidity.max():.1e} ({stiff})",
+        "the digits do not suffice; check the units of sections and materials",
+    )
 
 
 def factor(frame: Frame) -> Factored:
@@ -139,19 +156,22 @@ def _largest_of_joint(diagonal: F64) -> F64:
 
 def _refined(frame: Frame, factored: Factored, load: F64) -> Extended:
     """(J, 6) displacement in extended precision."""
-    geometry = frame.geometry(np.longdouble)
+    geometry = frame.geometry(EXTENDED)
     free, scale = factored.free, factored.scale
-    answer = np.zeros(load.size, dtype=np.longdouble)
-    residual: Extended = load.ravel().astype(np.longdouble)
+    answer: Extended = np.zeros(load.size, dtype=EXTENDED)
+    residual: Extended = load.ravel().astype(EXTENDED)
+    change = previous = np.inf
     for _ in range(REFINEMENTS):
         right = scale * residual[free].astype(np.float64)
         correction = scale * factored.solve(right)
         answer[free] += correction
-        if not np.abs(correction / scale).max(initial=0.0) > SETTLED * float(
-            np.abs(answer[free] / scale).max(initial=0.0)
-        ):
+        largest = float(np.abs(answer[free] / scale).max(initial=0.0))
+        previous, change = change, float(np.abs(correction / scale).max(initial=0.0))
+        if change <= SETTLED * largest or not change < previous / 2:
             break
         residual = load.ravel() - _joint_forces(frame, _forces(frame, geometry, answer)[0])
+    if not min(change, previous) <= GOOD * largest:
+        raise unlike(frame)
     return answer.reshape(load.shape)
 
 
@@ -180,7 +200,7 @@ def _joint_forces(frame: Frame, forces: Extended) -> Extended:
 
 
 def _answer(frame: Frame, displacement: Extended) -> Answer:
-    geometry = frame.geometry(np.longdouble)
+    geometry = frame.geometry(EXTENDED)
     xi, xj, _, rigidity, ends = geometry
     length = beam.lengths(xi, xj)
     members, joints, cases = len(frame.members), len(frame.joints), len(frame.cases)

@@ -53,6 +53,8 @@ def modes(frame: Frame, count: int) -> Modes:
         raise InputError("masses", "none", "give the materials a density or the joints a mass")
     shift = _shift(k, m)
     vectors = _lowest(k, m, shift, min(count, k.shape[0]))
+    if vectors is None:
+        raise general.unlike(frame)
     shape = np.zeros((vectors.shape[1], free.size))
     shape[:, free] = vectors.T
     square = _rayleigh(frame, m, vectors, shape)
@@ -75,14 +77,20 @@ def _shift(k: sp.csc_matrix, m: sp.csc_matrix) -> float:
     return float(1e-12 * (k.diagonal()[heavy] / m.diagonal()[heavy]).max())
 
 
-def _lowest(k: sp.csc_matrix, m: sp.csc_matrix, shift: float, count: int) -> F64:
-    """(free, count) shapes of the largest mu in M v = mu (K + shift M) v, unit modal mass."""
+def _lowest(k: sp.csc_matrix, m: sp.csc_matrix, shift: float, count: int) -> F64 | None:
+    """(free, count) shapes of the largest mu in M v = mu (K + shift M) v, unit modal mass.
+
+    None when the members are too unlike for the digits.
+    """
     shifted = (k + shift * m).tocsc()
     size = k.shape[0]
     if size <= DENSE or count >= size - 1:
         scale = 1 / np.sqrt(shifted.diagonal())
         both = [matrix.toarray() * scale[:, None] * scale for matrix in (m, shifted)]
-        mu, vectors = scipy.linalg.eigh(*both, subset_by_index=(size - count, size - 1))
+        try:
+            mu, vectors = scipy.linalg.eigh(*both, subset_by_index=(size - count, size - 1))
+        except np.linalg.LinAlgError:
+            return None
         vectors = scale[:, None] * vectors
     else:
         factor = splu(

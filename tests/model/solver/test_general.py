@@ -247,6 +247,24 @@ def test_a_cantilever_in_3000_pieces_keeps_ten_digits():
     assert tip[3] == pytest.approx(10 / 1341.8, rel=1e-10)
 
 
+def test_without_extended_precision_fewer_digits_are_left(monkeypatch):
+    frame = random_frame(5)
+    best = general.solve(frame).displacement
+    monkeypatch.setattr(general, "EXTENDED", np.float64)
+    plain = general.solve(frame).displacement
+    assert np.abs(plain - best).max() < 1e-9 * np.abs(best).max()
+    tip = general.solve(chain(300)).displacement[0, -1]
+    assert tip[2] == pytest.approx(-(10.0**3) / (3 * 1744.3), rel=1e-6)
+
+
+def test_members_too_unlike_for_sixteen_digits_are_named():
+    frame = random_frame(5)
+    rigidity = frame.rigidity.copy()
+    rigidity[0, :4] *= 1e25
+    with pytest.raises(InputError, match=r"m0.*check the units"):
+        general.solve(replace(frame, rigidity=rigidity))
+
+
 def test_a_frame_of_3000_members_balances():
     skeleton, batch = frames.frame_c(250)
     held = np.zeros((len(skeleton.joints), 6), dtype=bool)
