@@ -33,8 +33,12 @@ TURNED = 1
 """What to add to the place of a group's end flexibilities seen from the to end."""
 NEAR = 10
 """Place in a group of the end flexibilities: Iy at from, Iy at to, Iz at from, Iz at to."""
-KEPT = 19
-"""Vectors kept of a member: x, y, z (9), L, 1/L, ea, t, k11y, k12y, k22y, k11z, k12z, k22z."""
+X, Y, Z, LENGTH, PER_LENGTH, EA, T, IN_Y, IN_Z, MEMBER = 0, 3, 6, 9, 10, 11, 12, 13, 16, 19
+"""Places in a prepared member's strip: local axes, L, 1/L, axial and torsional stiffness, k11,
+k12, k22 of bending with Iy and with Iz; their number."""
+K11, K12, K22 = 0, 1, 2
+TURNS = tuple(low(3 + a, 3 + b) for a in range(3) for b in range(a + 1))
+"""Entries of a diagonal block that belong to rotations alone."""
 KINDS = 5
 
 
@@ -53,14 +57,21 @@ def prepare_group(code: Code, group: Strip, given: Strip) -> None:
 
 @dataclass(frozen=True)
 class _Plane:
+    """Bending stiffness of one plane: end moments against rotations from the chord."""
+
     k11: Lanes
     k12: Lanes
     k22: Lanes
 
+    @staticmethod
+    def of(member: Strip, start: int) -> _Plane:
+        return _Plane(*_three(member, start))
+
 
 @vector_code
-def assemble_member(
+def prepare_member(
     code: Code,
+    member: Strip,
     late: Strip,
     early: Strip,
     up: Scalars,
@@ -68,60 +79,90 @@ def assemble_member(
     group: Strip,
     late_end: Strip,
     early_end: Strip,
-    late_diagonal: Strip,
-    early_diagonal: Strip,
-    below: Strip,
-    kept: Strip,
 ) -> None:
-    """Add one member to the two diagonal blocks; set its block below the diagonal.
+    """Local axes, length and natural stiffness of one member into its strip.
 
-    late, early : positions of the two joints. up : unit vector. here : 1 vector, 0 where absent.
-    late_end, early_end : bending flexibility of that end, Iy in entry 0 and Iz in entry 2.
-    kept : what ``add_energy`` needs later.
+    late, early : positions of the two joints. up : unit vector, then one at right angles to it,
+    along which an absent member is imagined. here : 1 vector, 0 where absent. late_end,
+    early_end : bending flexibility of that end, Iy in entry 0 and Iz in entry 2.
     """
-    x, y, z, length, per_length = _axes(code, late, early, up)
     present = here[0] > 0.5
-
-    def stiff(value: Lanes) -> Lanes:
-        return present.pick(value, 0.0)
-
-    ea = stiff(1.0 / (length * group[0] + group[6]))
-    t = stiff(1.0 / (length * group[3] + group[7]))
+    along = tuple(present.pick(early[k] - late[k], up[3 + k]) for k in range(3))
+    square = _dot(along, along)
+    length = code.sqrt(square)
+    per_length = 1.0 / length
+    x = _times(along, per_length)
+    across = _cross((up[0], up[1], up[2]), x)
+    sine = _dot(across, across)
+    per_sine = (sine > PARALLEL**2).pick(1.0 / code.sqrt(sine), float("nan"))
+    y = _times(across, per_sine)
     in_y = _plane(length, per_length, group[1], group[5], late_end[0], early_end[0])
     in_z = _plane(length, per_length, group[2], group[4], late_end[2], early_end[2])
-    in_y = _Plane(stiff(in_y.k11), stiff(in_y.k12), stiff(in_y.k22))
-    in_z = _Plane(stiff(in_z.k11), stiff(in_z.k12), stiff(in_z.k22))
-    x, y, z = ((stiff(v[0]), stiff(v[1]), stiff(v[2])) for v in (x, y, z))
-    length, per_length = stiff(length), stiff(per_length)
-    bending = (in_y.k11, in_y.k12, in_y.k22, in_z.k11, in_z.k12, in_z.k22)
-    for k, value in enumerate((*x, *y, *z, length, per_length, ea, t, *bending)):
-        kept[k] = value
+    stiffness = (
+        1.0 / (length * group[0] + group[6]),
+        1.0 / (length * group[3] + group[7]),
+        *(in_y.k11, in_y.k12, in_y.k22),
+        *(in_z.k11, in_z.k12, in_z.k22),
+    )
+    for k, value in enumerate((*x, *y, *_cross(x, y), length, per_length)):
+        member[k] = value
+    for k, value in enumerate(stiffness):
+        member[EA + k] = present.pick(value, 0.0)
 
-    y1, y2 = (in_y.k11 + in_y.k12) * per_length, (in_y.k12 + in_y.k22) * per_length
-    z1, z2 = (in_z.k11 + in_z.k12) * per_length, (in_z.k12 + in_z.k22) * per_length
-    uu = _spread(x, y, z, ea, (z1 + z2) * per_length, (y1 + y2) * per_length)
-    ii = _spread(x, y, z, t, in_y.k11, in_z.k11)
-    ij = _spread(x, y, z, -t, in_y.k12, in_z.k12)
-    jj = _spread(x, y, z, t, in_y.k22, in_z.k22)
-    for a in range(3):
-        for b in range(a + 1):
-            for diagonal, rotation in ((late_diagonal, ii), (early_diagonal, jj)):
-                k, r = low(a, b), low(3 + a, 3 + b)
-                diagonal[k] = diagonal[k] + uu[k]
-                diagonal[r] = diagonal[r] + rotation[k]
+
+@vector_code
+def assemble_member(
+    code: Code, member: Strip, late_diagonal: Strip, early_diagonal: Strip, below: Strip
+) -> None:
+    """Add a prepared member to its two diagonal blocks; set its block below the diagonal.
+
+    With zz' = I - xx' - yy' and zy' = yz' - X, X the matrix of "times x", every 3 x 3 part needs
+    one product less. The parts below the diagonal are the negative ones, so those are made.
+    """
+    xx, yy = _products(_three(member, X)), _products(_three(member, Y))
+    y1, y2 = _forces(member, IN_Y)
+    z1, z2 = _forces(member, IN_Z)
+    less = -member[PER_LENGTH]
+    moves = _combined(xx, yy, -member[EA], (z1 + z2) * less, (y1 + y2) * less)
     for a in range(3):
         for b in range(3):
             k = low(max(a, b), min(a, b))
-            yz, zy = y[a] * z[b], z[a] * y[b]
-            with_late = z1 * yz - y1 * zy
-            with_early = z2 * yz - y2 * zy
+            below[SIZE * a + b] = moves[k]
+            if b <= a:
+                late_diagonal[k] = late_diagonal[k] - moves[k]
+                early_diagonal[k] = early_diagonal[k] - moves[k]
+
+    turns = _combined(xx, yy, member[T], member[IN_Y + K11], member[IN_Z + K11])
+    for k, entry in enumerate(TURNS):
+        late_diagonal[entry] = late_diagonal[entry] + turns[k]
+    turns = _combined(xx, yy, member[T], member[IN_Y + K22], member[IN_Z + K22])
+    for k, entry in enumerate(TURNS):
+        early_diagonal[entry] = early_diagonal[entry] + turns[k]
+    turns = _combined(xx, yy, -member[T], member[IN_Y + K12], member[IN_Z + K12])
+    for a in range(3):
+        for b in range(3):
+            below[SIZE * (3 + a) + 3 + b] = turns[low(max(a, b), min(a, b))]
+
+    x, y, z = (_three(member, axis) for axis in (X, Y, Z))
+    y1, y2 = _forces(member, IN_Y)
+    z1, z2 = _forces(member, IN_Z)
+    late_x, early_x = _times(x, y1), _times(x, y2)
+    late_yz, early_yz = y1 - z1, z2 - y2
+    for a in range(3):
+        for b in range(3):
+            yz = y[a] * z[b]
+            minus_late, with_early = late_yz * yz, early_yz * yz
+            if a != b:
+                k = 3 - a - b
+                if (b - a) % 3 == 1:
+                    minus_late, with_early = minus_late - late_x[k], with_early + early_x[k]
+                else:
+                    minus_late, with_early = minus_late + late_x[k], with_early - early_x[k]
             turn = low(3 + b, a)
-            late_diagonal[turn] = late_diagonal[turn] + with_late
-            early_diagonal[turn] = early_diagonal[turn] - with_early
-            below[SIZE * a + b] = -uu[k]
+            below[SIZE * (3 + b) + a] = minus_late
+            late_diagonal[turn] = late_diagonal[turn] - minus_late
             below[SIZE * a + 3 + b] = with_early
-            below[SIZE * (3 + b) + a] = -with_late
-            below[SIZE * (3 + a) + 3 + b] = ij[k]
+            early_diagonal[turn] = early_diagonal[turn] - with_early
 
 
 @vector_code
@@ -133,15 +174,15 @@ def add_energy(
     group: Strip,
     late_end: Strip,
     early_end: Strip,
-    kept: Strip,
+    member: Strip,
 ) -> None:
     """Add a member's strain energy to its group's five: axial, bending, torsion, shear, joints.
 
     u_late, u_early : displacements of the two joints. Twice the energy is added up.
     """
-    x, y, z = ((kept[3 * k], kept[3 * k + 1], kept[3 * k + 2]) for k in range(3))
-    length, per_length, ea, t = kept[9], kept[10], kept[11], kept[12]
-    in_y, in_z = _Plane(kept[13], kept[14], kept[15]), _Plane(kept[16], kept[17], kept[18])
+    x, y, z = (_three(member, axis) for axis in (X, Y, Z))
+    in_y, in_z = _Plane.of(member, IN_Y), _Plane.of(member, IN_Z)
+    length, per_length, ea, t = (member[k] for k in (LENGTH, PER_LENGTH, EA, T))
     along = _minus(_three(u_early, 0), _three(u_late, 0))
     turn_late, turn_early = _three(u_late, 3), _three(u_early, 3)
     force = ea * _dot(x, along)
@@ -149,7 +190,6 @@ def add_energy(
     chord_y, chord_z = -_dot(z, along) * per_length, _dot(y, along) * per_length
     y1, y2 = _moments(in_y, _dot(y, turn_late) - chord_y, _dot(y, turn_early) - chord_y)
     z1, z2 = _moments(in_z, _dot(z, turn_late) - chord_z, _dot(z, turn_early) - chord_z)
-    absent = length.equals(0.0)
     bend_y, bend_z = y1 * y1 - y1 * y2 + y2 * y2, z1 * z1 - z1 * z2 + z2 * z2
     slide_y, slide_z = (y1 + y2) * (y1 + y2), (z1 + z2) * (z1 + z2)
     joints = force * force * group[6] + torque * torque * group[7]
@@ -163,23 +203,7 @@ def add_energy(
         joints,
     )
     for kind, value in enumerate(stored):
-        energy[kind] = energy[kind] + absent.pick(0.0, value)
-
-
-def _axes(
-    code: Code, late: Strip, early: Strip, up: Scalars
-) -> tuple[Vector, Vector, Vector, Lanes, Lanes]:
-    """Local axes, length and its inverse; not a number where ``up`` lies along the member."""
-    along = _minus(_three(early, 0), _three(late, 0))
-    square = _dot(along, along)
-    length = code.sqrt(square)
-    per_length = 1.0 / length
-    x = _times(along, per_length)
-    across = _cross((up[0], up[1], up[2]), x)
-    sine = _dot(across, across)
-    per_sine = (sine > PARALLEL**2).pick(1.0 / code.sqrt(sine), float("nan"))
-    y = _times(across, per_sine)
-    return x, y, _cross(x, y), length, per_length
+        energy[kind] = energy[kind] + (ea > 0.0).pick(value, 0.0)
 
 
 def _plane(
@@ -200,10 +224,24 @@ def _moments(plane: _Plane, turn_late: Lanes, turn_early: Lanes) -> tuple[Lanes,
     )
 
 
-def _spread(x: Vector, y: Vector, z: Vector, a: Lanes, b: Lanes, c: Lanes) -> list[Lanes]:
-    """Lower triangle of a xx' + b yy' + c zz'."""
-    ax, by, cz = _times(x, a), _times(y, b), _times(z, c)
-    return [ax[i] * x[j] + by[i] * y[j] + cz[i] * z[j] for i in range(3) for j in range(i + 1)]
+def _forces(member: Strip, plane: int) -> tuple[Lanes, Lanes]:
+    """Force across the member for a turn of the later end, and of the earlier one."""
+    k12, per_length = member[plane + K12], member[PER_LENGTH]
+    return (member[plane + K11] + k12) * per_length, (member[plane + K22] + k12) * per_length
+
+
+def _products(v: Vector) -> list[Lanes]:
+    """Lower triangle of vv'."""
+    return [v[a] * v[b] for a in range(3) for b in range(a + 1)]
+
+
+def _combined(xx: list[Lanes], yy: list[Lanes], a: Lanes, b: Lanes, c: Lanes) -> list[Lanes]:
+    """Lower triangle of a xx' + b yy' + c zz', zz' being what xx' and yy' leave of I."""
+    ac, bc = a - c, b - c
+    triangle = [ac * x + bc * y for x, y in zip(xx, yy, strict=True)]
+    for k in range(3):
+        triangle[low(k, k)] = triangle[low(k, k)] + c
+    return triangle
 
 
 def _three(strip: Strip, start: int) -> Vector:

@@ -32,6 +32,7 @@ def factor_diagonal(
     code: Code,
     block: Strip,
     assembled: Strip,
+    absent: Strip,
     status: Strip,
     first_status: Number,
     left: Places,
@@ -41,11 +42,13 @@ def factor_diagonal(
     """Subtract L L' of the blocks to the left, then factor, testing every pivot.
 
     block : the joint's triangle, in place. assembled : room for 6 vectors.
+    absent : 1 vector, gets 1 where the joint has no stiffness at all; it is given a unit one.
     status : 1 vector, 0 while sound; gets first_status + direction where a pivot fails.
     left, start, stop : which blocks stand to the left.
     """
     stiff = [block[low(a, a)] for a in range(SIZE)]
     none = sum(stiff[1:], stiff[0]).equals(0.0)
+    absent[0] = none.pick(1.0, 0.0)
     c = Sums(code, TRIANGLE)
     for a in range(SIZE):
         for b in range(a):

@@ -22,12 +22,13 @@ from numba import njit
 from model.solver.assembly import (
     GIVEN,
     GROUP,
-    KEPT,
     KINDS,
+    MEMBER,
     NEAR,
     add_energy,
     assemble_member,
     prepare_group,
+    prepare_member,
 )
 from model.solver.elimination import (
     BLOCK,
@@ -66,79 +67,84 @@ def take_in(lanes, work, layout, tables, xyz, rigidity, ends, present, start, st
                 work[at] = rigidity[frame, g, k]
                 work[at + 6 * width] = ends[frame, g, k]
         for m in range(present.shape[1]):
-            work[(layout.here + m) * width + w] = present[frame, m]
-
-
-@njit(nogil=True)
-def assemble(lanes, work, layout, tables):
-    """Stiffness of all members into their blocks, and the supports."""
-    width = len(lanes)
-    work[layout.diagonal * width : layout.motion * width] = 0.0
-    for g in range((layout.group - layout.given) // GIVEN):
-        prepare_group(lanes, work, layout.group + GROUP * g, layout.given + GIVEN * g)
-    for m in range(len(tables.group)):
-        group, turned = layout.group + GROUP * tables.group[m], tables.turned[m]
-        assemble_member(
-            lanes,
-            work,
-            layout.place + 3 * tables.late[m],
-            layout.place + 3 * tables.early[m],
-            tables.up,
-            3 * m,
-            layout.here + m,
-            group,
-            group + NEAR + turned,
-            group + NEAR + 1 - turned,
-            layout.diagonal + TRIANGLE * tables.late[m],
-            layout.diagonal + TRIANGLE * tables.early[m],
-            tables.block[m],
-            layout.kept + KEPT * m,
-        )
-    for extra in range(len(tables.twin_block)):
-        source = (layout.below + BLOCK * (len(tables.filled) + extra)) * width
-        target = tables.twin_block[extra] * width
-        for k in range(BLOCK * width):
-            work[target + k] += work[source + k]
-    for held in tables.held:
-        for w in range(width):
-            work[(layout.diagonal + held) * width + w] *= 2.0
+            work[(layout.here + m) * width + w] = present[frame, tables.member[m]]
 
 
 @njit(nogil=True)
 def take_forces(lanes, work, layout, tables, value, start, stop):
-    """Joint forces of every case; impossible ones (see ``plain.impossible_loads``) as status."""
+    """Joint forces of every case in the order of elimination."""
     width = len(lanes)
     joints = len(tables.order)
     work[layout.motion * width : layout.place * width] = 0.0
-    work[layout.status * width : layout.assembled * width] = 0.0
     for w in range(width):
         frame = min(start + w, stop - 1)
-        for k in range(len(tables.load_step)):
-            step, direction = tables.load_step[k], tables.load_direction[k]
-            absent = is_absent(work, layout.diagonal + TRIANGLE * step, width, w)
-            for case in range(value.shape[1]):
-                force = value[frame, case, k]
-                at = layout.motion + SIZE * (case * joints + step) + direction
-                work[at * width + w] += force
-                wrong = (absent and force != 0.0) or not np.isfinite(force)
-                if wrong and work[layout.status * width + w] == 0.0:
-                    work[layout.status * width + w] = 1 + SIZE * tables.load_joint[k] + direction
+        for case in range(value.shape[1]):
+            for k in range(len(tables.load_step)):
+                joint = case * joints + tables.load_step[k]
+                at = layout.motion + SIZE * joint + tables.load_direction[k]
+                work[at * width + w] += value[frame, case, k]
 
 
 @njit(nogil=True)
-def is_absent(work, diagonal, width, w):
-    """Whether a joint has no stiffness at all before elimination."""
-    total = 0.0
-    for k in range(SIZE):
-        total += work[(diagonal + (k * (k + 3)) // 2) * width + w]
-    return total == 0.0
+def prepare(lanes, work, layout, tables):
+    """Flexibilities of the groups, local axes and natural stiffness of the members."""
+    for g in range((layout.group - layout.given) // GIVEN):
+        prepare_group(lanes, work, layout.group + GROUP * g, layout.given + GIVEN * g)
+    for m in range(len(tables.group)):
+        group, turned = layout.group + GROUP * tables.group[m], tables.turned[m]
+        prepare_member(
+            lanes,
+            work,
+            layout.member + MEMBER * m,
+            layout.place + 3 * tables.late[m],
+            layout.place + 3 * tables.early[m],
+            tables.up,
+            6 * m,
+            layout.here + m,
+            group,
+            group + NEAR + turned,
+            group + NEAR + 1 - turned,
+        )
+
+
+@njit(nogil=True, forceinline=True)
+def add_members(lanes, work, layout, tables, j):
+    """Stiffness of the members whose earlier end is eliminated in step ``j``, and supports.
+
+    Together with the steps before, that is all the stiffness of joint ``j``.
+    """
+    width = len(lanes)
+    for m in range(tables.member_start[j], tables.member_start[j + 1]):
+        assemble_member(
+            lanes,
+            work,
+            layout.member + MEMBER * m,
+            layout.diagonal + TRIANGLE * tables.late[m],
+            layout.diagonal + TRIANGLE * j,
+            tables.block[m],
+        )
+        if tables.twin[m] >= 0:
+            for k in range(BLOCK * width):
+                work[tables.twin[m] * width + k] += work[tables.block[m] * width + k]
+    for h in range(len(tables.held_step)):
+        if tables.held_step[h] == j:
+            at = layout.diagonal + TRIANGLE * j + tables.held_entry[h]
+            for w in range(width):
+                work[at * width + w] *= 2.0
 
 
 @njit(nogil=True)
 def factor_and_solve(lanes, work, layout, tables, cases):
-    """K = L L' joint by joint, and L y = f alongside while the blocks are in the near cache."""
+    """K = L L' joint by joint, and L y = f alongside.
+
+    Each step adds up its stiffness just before it is used, while it stays in the near cache.
+    """
+    width = len(lanes)
+    work[layout.diagonal * width : layout.motion * width] = 0.0
+    work[layout.status * width : layout.assembled * width] = 0.0
     stride = SIZE * len(tables.order)
     for j in range(len(tables.order)):
+        add_members(lanes, work, layout, tables, j)
         diagonal = layout.diagonal + TRIANGLE * j
         start, stop = tables.left_start[j], tables.left_start[j + 1]
         factor_diagonal(
@@ -146,6 +152,7 @@ def factor_and_solve(lanes, work, layout, tables, cases):
             work,
             diagonal,
             layout.assembled,
+            layout.absent + j,
             layout.status,
             1 + SIZE * tables.order[j],
             tables.left_block,
@@ -201,7 +208,7 @@ def solve_back(lanes, work, layout, tables, case):
 def add_energies(lanes, work, layout, tables, case):
     """Strain energy of every member under one case, summed by group and kind."""
     width = len(lanes)
-    work[layout.energy * width : layout.status * width] = 0.0
+    work[layout.energy * width : layout.absent * width] = 0.0
     motion = layout.motion + SIZE * len(tables.order) * case
     for m in range(len(tables.group)):
         group, turned = layout.group + GROUP * tables.group[m], tables.turned[m]
@@ -214,19 +221,32 @@ def add_energies(lanes, work, layout, tables, case):
             group,
             group + NEAR + turned,
             group + NEAR + 1 - turned,
-            layout.kept + KEPT * m,
+            layout.member + MEMBER * m,
         )
 
 
 @njit(nogil=True)
-def give_compliance(lanes, work, layout, compliance, status, start, stop):
-    """Status, and y'y of every case; not a number where the frame is loose."""
+def give_compliance(lanes, work, layout, tables, value, compliance, status, start, stop):
+    """Status, and y'y of every case; not a number where the frame is loose.
+
+    Forces that are not numbers, or that push a joint no member holds, come before all else.
+    """
     width = len(lanes)
     for w in range(stop - start):
-        status[start + w] = int(work[layout.status * width + w])
-        for case in range(compliance.shape[1]):
+        frame = start + w
+        code = 0
+        for k in range(len(tables.load_step)):
+            absent = work[(layout.absent + tables.load_step[k]) * width + w] == 1.0
+            for case in range(value.shape[1]):
+                force = value[frame, case, k]
+                if code == 0 and ((absent and force != 0.0) or not np.isfinite(force)):
+                    code = 1 + SIZE * tables.load_joint[k] + tables.load_direction[k]
+        if code == 0:
+            code = int(work[layout.status * width + w])
+        status[frame] = code
+        for case in range(value.shape[1]):
             total = work[(layout.work_done + case) * width + w]
-            compliance[start + w, case] = total if status[start + w] == 0 else np.nan
+            compliance[frame, case] = total if code == 0 else np.nan
 
 
 @njit(nogil=True)
@@ -286,10 +306,10 @@ def _make(sources: int) -> Any:
         for start in range(first, last, len(lanes)):
             stop = min(start + len(lanes), last)
             take_in(lanes, work, layout, tables, xyz, rigidity, ends, present, start, stop)
-            assemble(lanes, work, layout, tables)
             take_forces(lanes, work, layout, tables, value, start, stop)
+            prepare(lanes, work, layout, tables)
             factor_and_solve(lanes, work, layout, tables, value.shape[1])
-            give_compliance(lanes, work, layout, compliance, status, start, stop)
+            give_compliance(lanes, work, layout, tables, value, compliance, status, start, stop)
             for case in range(value.shape[1]):
                 if len(displacement) > 0 or case == energy_case:
                     solve_back(lanes, work, layout, tables, case)

@@ -13,8 +13,9 @@ place       joints x 3              joint positions
 here        members                 1 where the member is present
 given       groups x 12             section values and end flexibilities as they came
 group       groups x 14             the same as flexibilities
-kept        members x 19            local axes and natural stiffness of each member
+member      members x 19            local axes and natural stiffness of each member
 energy      groups x 5              strain energy by group and kind
+absent      joints                  1 where a joint has no stiffness
 status      1                       0 or the first loose direction
 work_done   cases                   y'y, the compliance
 assembled   6                       diagonal of one joint before elimination
@@ -28,7 +29,7 @@ from typing import Any, NamedTuple
 import numpy as np
 
 from model.frame.skeleton import F64, I32
-from model.solver.assembly import GIVEN, GROUP, KEPT, KINDS
+from model.solver.assembly import GIVEN, GROUP, KINDS, MEMBER
 from model.solver.elimination import BLOCK, SIZE, TRIANGLE, low
 from model.solver.problem import Problem
 
@@ -43,8 +44,9 @@ class Workspace(NamedTuple):
     here: int
     given: int
     group: int
-    kept: int
+    member: int
     energy: int
+    absent: int
     status: int
     work_done: int
     assembled: int
@@ -52,7 +54,12 @@ class Workspace(NamedTuple):
 
 
 class Tables(NamedTuple):
-    """The plan as places in the work array, and what members and loads refer to."""
+    """The plan as places in the work array, and what members and loads refer to.
+
+    Members stand in the order in which their earlier ends are eliminated; those of step ``j``
+    are entries ``member_start[j]`` to ``member_start[j + 1]``. ``member`` is their own number,
+    ``twin`` the block a second member between the same joints is added to, or -1.
+    """
 
     column_start: I32
     row_motion: I32
@@ -64,14 +71,17 @@ class Tables(NamedTuple):
     update_b: I32
     filled: I32
     order: I32
-    twin_block: I32
+    member_start: I32
+    member: I32
     late: I32
     early: I32
     turned: I32
     block: I32
+    twin: I32
     group: I32
     up: F64
-    held: I32
+    held_step: I32
+    held_entry: I32
     load_step: I32
     load_joint: I32
     load_direction: I32
@@ -89,8 +99,9 @@ def workspace_of(problem: Problem) -> Workspace:
         members,
         groups * GIVEN,
         groups * GROUP,
-        members * KEPT,
+        members * MEMBER,
         groups * KINDS,
+        plan.joints,
         1,
         problem.cases,
         SIZE,
@@ -105,7 +116,12 @@ def tables_of(problem: Problem, layout: Workspace) -> Tables:
     def int32(values: Any) -> I32:
         return np.array(values, dtype=np.int32, order="C").reshape(-1)
 
-    up = skeleton.up / np.sqrt((skeleton.up**2).sum(axis=1, keepdims=True))
+    member = np.argsort(plan.member_early, kind="stable")
+    block = plan.member_block[member]
+    second = block >= plan.blocks
+    twin = np.where(
+        second, np.append(plan.twin_block, 0)[np.where(second, block - plan.blocks, -1)], -1
+    )
     return Tables(
         column_start=int32(plan.column_start),
         row_motion=int32(layout.motion + SIZE * plan.row),
@@ -117,18 +133,30 @@ def tables_of(problem: Problem, layout: Workspace) -> Tables:
         update_b=int32(layout.below + BLOCK * plan.update_b),
         filled=int32(plan.filled),
         order=int32(plan.order),
-        twin_block=int32(layout.below + BLOCK * plan.twin_block),
-        late=int32(plan.member_late),
-        early=int32(plan.member_early),
-        turned=int32(plan.turned),
-        block=int32(layout.below + BLOCK * plan.member_block),
-        group=int32(skeleton.group),
-        up=np.array(up, dtype=np.float64).reshape(-1),
-        held=int32([TRIANGLE * plan.step[j] + low(d, d) for j, d in problem.gauge]),
+        member_start=int32(np.searchsorted(plan.member_early[member], np.arange(plan.joints + 1))),
+        member=int32(member),
+        late=int32(plan.member_late[member]),
+        early=int32(plan.member_early[member]),
+        turned=int32(plan.turned[member]),
+        block=int32(layout.below + BLOCK * block),
+        twin=int32(np.where(twin < 0, -1, layout.below + BLOCK * twin)),
+        group=int32(skeleton.group[member]),
+        up=_up_and_across(skeleton.up[member]).reshape(-1),
+        held_step=int32(plan.step[problem.gauge[:, 0]]),
+        held_entry=int32([low(d, d) for d in problem.gauge[:, 1]]),
         load_step=int32(plan.step[problem.joint]),
         load_joint=int32(problem.joint),
         load_direction=int32(problem.direction),
     )
+
+
+def _up_and_across(up: F64) -> F64:
+    """(members, 6) unit vector along ``up``, and one at right angles to it."""
+    unit = up / np.sqrt((up**2).sum(axis=1, keepdims=True))
+    axis = np.eye(3)[np.abs(unit).argmin(axis=1)]
+    across = np.cross(unit, axis)
+    across /= np.sqrt((across**2).sum(axis=1, keepdims=True))
+    return np.concatenate([unit, across], axis=1)
 
 
 def make_work(layout: Workspace, lanes: int) -> F64:

@@ -124,7 +124,10 @@ def test_assembles_the_same_blocks_as_the_plain_twin(seed: int) -> None:
     lanes = (0,) * LANES
     values = (asked.xyz, asked.rigidity, asked.ends, asked.present)
     kernel.take_in(lanes, work, layout, tables, *values, 0, here.stop)
-    kernel.assemble(lanes, work, layout, tables)
+    kernel.prepare(lanes, work, layout, tables)
+    work[layout.diagonal * LANES : layout.motion * LANES] = 0.0
+    for j in range(asked.plan.joints):
+        kernel.add_members(lanes, work, layout, tables, j)
     vectors = work.reshape(-1, LANES)[:, here]
     blocks = vectors[layout.below : layout.diagonal].reshape(-1, 6, 6, here.stop)
     exists = np.flatnonzero(asked.plan.filled == 0)
