@@ -246,8 +246,10 @@ def drawing_in_words(drawing: FrameDrawing, units: Units = METRIC) -> str:
     members = int(drawing.shown.sum())
     groups = sorted({g for g, there in zip(drawing.groups, drawing.shown, strict=True) if there})
     parts = [
-        f"{drawing.title}: {count(members, 'member')} in {count(len(groups), 'group')} "
-        f"({listed(groups)}), {length} long, {width} wide, {height} high."
+        (
+            f"{drawing.title}: {count(members, 'member')} in {count(len(groups), 'group')} "
+            f"({listed(groups)}), {length} long, {width} wide, {height} high."
+        )
     ]
     if drawing.value is not None and drawing.value.highest > 0:
         amount = np.where(drawing.shown, np.nan_to_num(drawing.value.amount), 0.0)

@@ -13,9 +13,10 @@ SPACE = "\u00a0"
 UNKNOWN = "–"
 """Stands for a number that is not known."""
 
-AXIS = ","
+AXIS = ",~f"
 """The same style as a format of chart axes (comma, no superfluous zeros)."""
-PERCENT_AXIS = ".0%"
+PERCENT_AXIS = f"format(100 * datum.value, ',~f') + '{SPACE}%'"
+"""Shares of one in per cent, as a label expression of chart axes."""
 
 
 def number(value: float | None, figures: int = 3) -> str:
@@ -55,7 +56,9 @@ def percent(share: float | None) -> str:
     value = share * 100
     if 0 < abs(value) < 0.1:
         return f"<{SPACE}0.1{SPACE}%"
-    return with_unit(round(value) if abs(value) >= 9.95 else round(value, 1), "%", 2)
+    if value == 0 or abs(value) >= 9.95:
+        return with_unit(round(value), "%", 2)
+    return f"{value:.1f}{SPACE}%".replace("-", "−")
 
 
 def count(amount: int, one: str, many: str | None = None) -> str:

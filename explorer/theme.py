@@ -49,7 +49,7 @@ LIGHT = Colours(
     palette=("#2B6CA3", "#98330F", "#1F9083", "#5E2A77", "#94780A", "#1E2A33"),
     ramp=("#D5CFC0", "#DDB877", "#D98A45", "#B9532F", "#83243A", "#4A1033"),
     tube="#71808D",
-    quiet="#A9AFB4",
+    quiet="#858D95",
 )
 DARK = Colours(
     background="#14181D",
@@ -62,7 +62,7 @@ DARK = Colours(
     palette=("#5793C8", "#EE9068", "#7DE8D2", "#C3A5F2", "#F6DA6A", "#C2593F"),
     ramp=("#505D75", "#7A5B8F", "#B2587F", "#E06C5A", "#F2A24C", "#FBE28A"),
     tube="#9AA9B6",
-    quiet="#5F6A75",
+    quiet="#76828E",
 )
 
 
