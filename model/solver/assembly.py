@@ -67,6 +67,9 @@ class _Plane:
     def of(member: Strip, start: int) -> _Plane:
         return _Plane(*_three(member, start))
 
+    def moments(self, late: Lanes, early: Lanes) -> tuple[Lanes, Lanes]:
+        return self.k11 * late + self.k12 * early, self.k12 * late + self.k22 * early
+
 
 @vector_code
 def prepare_member(
@@ -87,9 +90,10 @@ def prepare_member(
     early_end : bending flexibility of that end, Iy in entry 0 and Iz in entry 2.
     """
     present = here[0] > 0.5
-    along = tuple(present.pick(early[k] - late[k], up[3 + k]) for k in range(3))
-    square = _dot(along, along)
-    length = code.sqrt(square)
+    apart = _minus(_three(early, 0), _three(late, 0))
+    ax, ay, az = (present.pick(apart[k], up[3 + k]) for k in range(3))
+    along = (ax, ay, az)
+    length = code.sqrt(_dot(along, along))
     per_length = 1.0 / length
     x = _times(along, per_length)
     across = _cross((up[0], up[1], up[2]), x)
@@ -180,30 +184,94 @@ def add_energy(
 
     u_late, u_early : displacements of the two joints. Twice the energy is added up.
     """
-    x, y, z = (_three(member, axis) for axis in (X, Y, Z))
-    in_y, in_z = _Plane.of(member, IN_Y), _Plane.of(member, IN_Z)
-    length, per_length, ea, t = (member[k] for k in (LENGTH, PER_LENGTH, EA, T))
-    along = _minus(_three(u_early, 0), _three(u_late, 0))
-    turn_late, turn_early = _three(u_late, 3), _three(u_early, 3)
-    force = ea * _dot(x, along)
-    torque = t * _dot(x, _minus(turn_early, turn_late))
-    chord_y, chord_z = -_dot(z, along) * per_length, _dot(y, along) * per_length
-    y1, y2 = _moments(in_y, _dot(y, turn_late) - chord_y, _dot(y, turn_early) - chord_y)
-    z1, z2 = _moments(in_z, _dot(z, turn_late) - chord_z, _dot(z, turn_early) - chord_z)
-    bend_y, bend_z = y1 * y1 - y1 * y2 + y2 * y2, z1 * z1 - z1 * z2 + z2 * z2
-    slide_y, slide_z = (y1 + y2) * (y1 + y2), (z1 + z2) * (z1 + z2)
-    joints = force * force * group[6] + torque * torque * group[7]
-    joints = joints + y1 * y1 * late_end[0] + y2 * y2 * early_end[0]
-    joints = joints + z1 * z1 * late_end[2] + z2 * z2 * early_end[2]
+    s = _Strained(member, u_late, u_early)
+    length, per_length = member[LENGTH], member[PER_LENGTH]
+    joints = s.n * s.n * group[6] + s.t * s.t * group[7]
+    joints = joints + s.y1 * s.y1 * late_end[0] + s.y2 * s.y2 * early_end[0]
+    joints = joints + s.z1 * s.z1 * late_end[2] + s.z2 * s.z2 * early_end[2]
+    bend_y, slide_y = _bend_and_slide(s.y1, s.y2)
+    bend_z, slide_z = _bend_and_slide(s.z1, s.z2)
     stored = (
-        force * force * length * group[0],
+        s.n * s.n * length * group[0],
         2.0 * length * (bend_y * group[1] + bend_z * group[2]),
-        torque * torque * length * group[3],
+        s.t * s.t * length * group[3],
         per_length * (slide_y * group[5] + slide_z * group[4]),
         joints,
     )
+    present = member[EA] > 0.0
     for kind, value in enumerate(stored):
-        energy[kind] = energy[kind] + (ea > 0.0).pick(value, 0.0)
+        energy[kind] = energy[kind] + present.pick(value, 0.0)
+
+
+@vector_code
+def add_gradient(
+    code: Code,
+    late: Strip,
+    early: Strip,
+    u_late: Strip,
+    u_early: Strip,
+    up: Scalars,
+    group: Strip,
+    member: Strip,
+) -> None:
+    """Add what a member contributes to the slope of the compliance with its joints' positions.
+
+    late, early : slopes of the two joints. The formulas are those of ``gradient.energy_slope``.
+    """
+    s = _Strained(member, u_late, u_early)
+    per_length = member[PER_LENGTH]
+    bend_y, slide_y = _bend_and_slide(s.y1, s.y2)
+    bend_z, slide_z = _bend_and_slide(s.z1, s.z2)
+    longer = -(s.n * s.n * group[0] + s.t * s.t * group[3])
+    longer = longer - 2.0 * (bend_y * group[1] + bend_z * group[2])
+    longer = longer + per_length * per_length * (slide_y * group[5] + slide_z * group[4])
+    across_y, across_z = (s.y1 + s.y2) * per_length, (s.z1 + s.z2) * per_length
+    (_, iy, iz), (_, jy, jz) = s.late, s.early
+    ix, jx = s.late[0], s.early[0]
+    slip_x, slip_y, slip_z = s.slip
+    longer = longer + 2.0 * (across_z * slip_y - across_y * slip_z)
+
+    above = (up[0], up[1], up[2])
+    roll = _dot(above, s.x) / _dot(above, s.z)
+    rolled = s.y1 * (iz - slip_y) + s.y2 * (jz - slip_y)
+    rolled = rolled - s.z1 * (iy + slip_z) - s.z2 * (jy + slip_z)
+    aside = s.t * (jy - iy) - s.y1 * ix - s.y2 * jx + roll * rolled
+    upward = s.t * (jz - iz) - s.z1 * ix - s.z2 * jx
+    aside = s.n * slip_y + aside * per_length + across_z * slip_x
+    upward = s.n * slip_z + upward * per_length - across_y * slip_x
+    present = member[EA] > 0.0
+    for k in range(3):
+        slope = longer * s.x[k] + 2.0 * (aside * s.y[k] + upward * s.z[k])
+        slope = present.pick(slope, 0.0)
+        late[k] = late[k] + slope
+        early[k] = early[k] - slope
+
+
+class _Strained:
+    """A member between displaced joints.
+
+    x, y, z : local axes; n, t, y1, y2, z1, z2 : natural forces. slip : displacement of the early
+    end against the late one over the length; late, early : rotations; all in local axes.
+    """
+
+    def __init__(self, member: Strip, u_late: Strip, u_early: Strip) -> None:
+        self.x, self.y, self.z = (_three(member, axis) for axis in (X, Y, Z))
+        axes = (self.x, self.y, self.z)
+        in_y, in_z = _Plane.of(member, IN_Y), _Plane.of(member, IN_Z)
+        moved = _minus(_three(u_early, 0), _three(u_late, 0))
+        turn_late, turn_early = _three(u_late, 3), _three(u_early, 3)
+        along = _dot(self.x, moved)
+        per_length = member[PER_LENGTH]
+        self.slip = tuple(
+            part * per_length for part in (along, *(_dot(a, moved) for a in axes[1:]))
+        )
+        self.late = tuple(_dot(axis, turn_late) for axis in axes)
+        self.early = tuple(_dot(axis, turn_early) for axis in axes)
+        _, slip_y, slip_z = self.slip
+        self.n = member[EA] * along
+        self.t = member[T] * (self.early[0] - self.late[0])
+        self.y1, self.y2 = in_y.moments(self.late[1] + slip_z, self.early[1] + slip_z)
+        self.z1, self.z2 = in_z.moments(self.late[2] - slip_y, self.early[2] - slip_y)
 
 
 def _plane(
@@ -217,11 +285,10 @@ def _plane(
     return _Plane((a + e2) * per_q, -b * per_q, (a + e1) * per_q)
 
 
-def _moments(plane: _Plane, turn_late: Lanes, turn_early: Lanes) -> tuple[Lanes, Lanes]:
-    return (
-        plane.k11 * turn_late + plane.k12 * turn_early,
-        plane.k12 * turn_late + plane.k22 * turn_early,
-    )
+def _bend_and_slide(m1: Lanes, m2: Lanes) -> tuple[Lanes, Lanes]:
+    """What the moment that varies along a member amounts to, in bending and in shear."""
+    across = m1 + m2
+    return m1 * m1 - m1 * m2 + m2 * m2, across * across
 
 
 def _forces(member: Strip, plane: int) -> tuple[Lanes, Lanes]:

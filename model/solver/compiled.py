@@ -51,6 +51,7 @@ def compile_for(lanes: int) -> None:
             places,
             types.Array(types.float64, 3, "C"),
             types.Array(types.float64, 4, "C"),
+            types.Array(types.float64, 3, "C"),
             types.int64,
             types.int64,
         )
@@ -70,6 +71,7 @@ class Compiled:
         self.compliance, self.status = solution.compliance, solution.status
         none3, none4 = np.empty((0, 0, 0)), np.empty((0, 0, 0, 0))
         self.energy = none3 if solution.energy is None else solution.energy
+        self.gradient = none3 if solution.gradient is None else solution.gradient
         self.displacement = none4 if solution.displacement is None else solution.displacement
 
     def worker(self) -> Callable[[int, int], None]:
@@ -94,6 +96,7 @@ class Compiled:
                 self.status,
                 self.energy,
                 self.displacement,
+                self.gradient,
                 first,
                 last,
             )

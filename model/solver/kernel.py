@@ -26,6 +26,7 @@ from model.solver.assembly import (
     MEMBER,
     NEAR,
     add_energy,
+    add_gradient,
     assemble_member,
     prepare_group,
     prepare_member,
@@ -208,7 +209,7 @@ def solve_back(lanes, work, layout, tables, case):
 def add_energies(lanes, work, layout, tables, case):
     """Strain energy of every member under one case, summed by group and kind."""
     width = len(lanes)
-    work[layout.energy * width : layout.absent * width] = 0.0
+    work[layout.energy * width : layout.slope * width] = 0.0
     motion = layout.motion + SIZE * len(tables.order) * case
     for m in range(len(tables.group)):
         group, turned = layout.group + GROUP * tables.group[m], tables.turned[m]
@@ -221,6 +222,27 @@ def add_energies(lanes, work, layout, tables, case):
             group,
             group + NEAR + turned,
             group + NEAR + 1 - turned,
+            layout.member + MEMBER * m,
+        )
+
+
+@njit(nogil=True)
+def add_gradients(lanes, work, layout, tables, case):
+    """Slope of one case's compliance with the position of every joint."""
+    width = len(lanes)
+    work[layout.slope * width : layout.absent * width] = 0.0
+    motion = layout.motion + SIZE * len(tables.order) * case
+    for m in range(len(tables.group)):
+        add_gradient(
+            lanes,
+            work,
+            layout.slope + 3 * tables.late[m],
+            layout.slope + 3 * tables.early[m],
+            motion + SIZE * tables.late[m],
+            motion + SIZE * tables.early[m],
+            tables.up,
+            6 * m,
+            layout.group + GROUP * tables.group[m],
             layout.member + MEMBER * m,
         )
 
@@ -275,6 +297,18 @@ def give_energy(lanes, work, layout, status, energy, start, stop):
                 energy[start + w, g, kind] = stored if status[start + w] == 0 else np.nan
 
 
+@njit(nogil=True)
+def give_gradient(lanes, work, layout, tables, status, gradient, start, stop):
+    """Slopes of all joints in their own order."""
+    width = len(lanes)
+    for w in range(stop - start):
+        for s in range(len(tables.order)):
+            for k in range(3):
+                slope = work[(layout.slope + 3 * s + k) * width + w]
+                where = (start + w, tables.order[s], k)
+                gradient[where] = slope if status[start + w] == 0 else np.nan
+
+
 def _make(sources: int) -> Any:
     """The compiled entry; ``sources`` is part of what its cached form is found by."""
 
@@ -293,13 +327,14 @@ def _make(sources: int) -> Any:
         status,
         energy,
         displacement,
+        gradient,
         first,
         last,
     ):
         """Solve frames ``first`` to ``last``; arrays as in ``Problem`` and ``Solution``.
 
         lanes : tuple with one entry a lane. work : aligned, ``layout.end`` vectors.
-        energy, displacement : without entries where they are not wanted.
+        energy, displacement, gradient : without entries where they are not wanted.
         """
         if sources == 0:
             return
@@ -315,6 +350,9 @@ def _make(sources: int) -> Any:
                     solve_back(lanes, work, layout, tables, case)
             if len(displacement) > 0:
                 give_displacement(lanes, work, layout, tables, status, displacement, start, stop)
+            if len(gradient) > 0:
+                add_gradients(lanes, work, layout, tables, energy_case)
+                give_gradient(lanes, work, layout, tables, status, gradient, start, stop)
             if energy_case != NO_CASE:
                 add_energies(lanes, work, layout, tables, energy_case)
                 give_energy(lanes, work, layout, status, energy, start, stop)

@@ -7,7 +7,8 @@ is taken in the same order; so the two can be held against each other entry by e
 2. ``factor``: block Cholesky K = L L', joint by joint, testing every pivot.
 3. ``forward``: L y = f for every load case; the compliance f'u is y'y.
 4. ``backward``: L' u = y where displacements or energies are wanted.
-5. ``energies``: strain energy by group and kind from the end displacements of every member.
+5. ``energies``: strain energy by group and kind from the end displacements of every member;
+   ``gradients``: change of the compliance with the joint positions.
 """
 
 from __future__ import annotations
@@ -26,6 +27,7 @@ from model.solver.beam import (
     member_energy,
     member_stiffness,
 )
+from model.solver.gradient import energy_slope
 from model.solver.plan import Plan
 from model.solver.problem import LOOSE_PIVOT, NO_CASE, Problem, Solution
 
@@ -90,6 +92,9 @@ def _solve_side_by_side(problem: Problem, solution: Solution, rows: slice) -> No
     displacement = np.moveaxis(u[:, plan.step], -1, 0)
     if solution.displacement is not None:
         solution.displacement[rows] = np.where(loose[:, None, None, None], np.nan, displacement)
+    if solution.gradient is not None:
+        slope = gradients(problem, members, displacement[:, problem.energy_case])
+        solution.gradient[rows] = np.where(loose[:, None, None], np.nan, slope)
     if solution.energy is not None:
         energy = energies(problem, members, displacement[:, problem.energy_case])
         solution.energy[rows] = np.where(loose[:, None, None], np.nan, energy)
@@ -248,4 +253,17 @@ def energies(problem: Problem, members: Members, displacement: F64) -> F64:
     total = np.zeros((len(energy), len(skeleton.groups), len(KINDS)))
     for m, group in enumerate(skeleton.group):
         total[:, group] += energy[:, m]
+    return total
+
+
+def gradients(problem: Problem, members: Members, displacement: F64) -> F64:
+    """(n, joints, 3) slope of the compliance; ``displacement`` (n, joints, 6) of one case."""
+    i, j = problem.skeleton.members.T
+    where = (members.start, members.end, members.up, members.rigidity, members.ends)
+    slope = energy_slope(*where, displacement[:, i], displacement[:, j])
+    slope[~members.here] = 0.0
+    total = np.zeros((*displacement.shape[:2], 3))
+    for m in range(len(i)):
+        total[:, i[m]] += slope[:, m]
+        total[:, j[m]] -= slope[:, m]
     return total

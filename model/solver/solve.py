@@ -68,6 +68,9 @@ def solve(
         Case whose strain energy by group and kind is wanted.
     displacements : bool
         Whether to return the joint displacements of all cases.
+    gradients : bool
+        Whether to return the slope of the ``energy_case``'s compliance with all joint positions,
+        its forces kept as they are. Where they depend on a position x too, add 2 u'(df/dx).
     threads : int, optional
         Threads to use; all processors when not given.
     block : int

@@ -15,6 +15,7 @@ given       groups x 12             section values and end flexibilities as they
 group       groups x 14             the same as flexibilities
 member      members x 19            local axes and natural stiffness of each member
 energy      groups x 5              strain energy by group and kind
+slope       joints x 3              change of the compliance with the joint positions
 absent      joints                  1 where a joint has no stiffness
 status      1                       0 or the first loose direction
 work_done   cases                   y'y, the compliance
@@ -46,6 +47,7 @@ class Workspace(NamedTuple):
     group: int
     member: int
     energy: int
+    slope: int
     absent: int
     status: int
     work_done: int
@@ -101,6 +103,7 @@ def workspace_of(problem: Problem) -> Workspace:
         groups * GROUP,
         members * MEMBER,
         groups * KINDS,
+        plan.joints * 3,
         plan.joints,
         1,
         problem.cases,

@@ -25,6 +25,7 @@ import numpy as np
 from model.frame.batch import Batch
 from model.solver.plan import plan_for
 from model.solver.solve import compile_now
+from tests import reference_libraries
 from tests.benchmarks import others, ours
 from tests.benchmarks.others import OneFrame, Task
 from tests.model.solver import frames
@@ -102,17 +103,10 @@ def measure(batch: Batch, threads: int, seconds: float) -> dict[str, float]:
 def optional(name: str) -> Any:
     """A library that need not be there."""
     try:
-        if name == "opensees":
-            from tests.reference.other_solvers import opensees
-
-            return opensees()
-        import Pynite
-    except BaseException as reason:  # pytest's Skipped is no Exception
-        if isinstance(reason, KeyboardInterrupt):
-            raise
-        print(f"{name} is not installed", file=sys.stderr)
+        return getattr(reference_libraries, name)()
+    except ImportError as reason:
+        print(reason, file=sys.stderr)
         return None
-    return Pynite
 
 
 def one_at_a_time(one: OneFrame, want: Any, seconds: float, least: int = 8) -> float:

@@ -78,7 +78,7 @@ def dense(task: Task) -> OneFrame:
         matrix[out, out] *= 2
         force = np.zeros((size, 2))
         force[task.force_dofs] = task.loads.value[k].T
-        u: F64 = np.linalg.solve(matrix, force)
+        u = np.asarray(np.linalg.solve(matrix, force), dtype=np.float64)
         _energies(task, k, u[:, 0])
         return np.einsum("dc,dc->c", force, u)
 
