@@ -51,7 +51,8 @@ def check_idle_loads(frame: Frame, idle: Idle) -> None:
         return
     loads = frame.loads.reshape(len(frame.cases), -1)
     work = np.abs(idle.vectors.T @ loads.T).T
-    bad = work > STRAINLESS * np.abs(loads).max(axis=1, initial=0.0)[:, None]
+    moment = np.abs(frame.loads[:, :, 3:]).max(axis=(1, 2), initial=0.0)
+    bad = work > STILL * moment[:, None]
     if bad.any():
         case, k = (int(v[0]) for v in np.nonzero(bad))
         dof = int(np.abs(idle.vectors[:, k].toarray().ravel()).argmax())

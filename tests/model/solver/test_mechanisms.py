@@ -229,7 +229,7 @@ def test_a_moment_on_a_joint_of_pins_is_refused():
     data = frame(
         {"A": [0, 0, 0], "B": [1, 0, 0]}, [("A", "B", ["rigid", "pinned"])], {"A": ALL}, {}
     )
-    data["cases"]["c"]["node_loads"] = {"B": [0, 0, -1, 0, 5, 0]}
+    data["cases"]["c"]["node_loads"] = {"B": [0, 0, -1e6, 0, 5, 0]}
     falls(data, "B", ["ry"], "take the moment away")
 
 
