@@ -232,7 +232,7 @@ def _pairs(found: Indices, labels: list[str]) -> pd.DataFrame:
 def _history(results: F64, labels: list[str], second_order: bool) -> pd.DataFrame:
     parts = []
     for count in sorted({max(4, len(results) // 4), max(4, len(results) // 2), len(results)}):
-        found = indices(results[:count], len(labels), False if not second_order else True, 50)
+        found = indices(results[:count], len(labels), second_order, 50)
         parts.append(
             pd.DataFrame(
                 {

@@ -40,7 +40,8 @@ def unbeaten(costs: F64) -> NDArray[np.int64]:
     if ranked.shape[1] == 2:
         best = np.minimum.accumulate(ranked[:, 1])
         first = np.concatenate([[True], ranked[1:, 1] < best[:-1]])
-        return sound[order[first]]
+        kept_rows: NDArray[np.int64] = sound[order[first]]
+        return kept_rows
     front = np.empty_like(ranked)
     members: list[int] = []
     for k, row in enumerate(ranked):
@@ -48,7 +49,8 @@ def unbeaten(costs: F64) -> NDArray[np.int64]:
         if not (seen <= row).all(axis=1).any():
             front[len(members)] = row
             members.append(k)
-    return sound[order[members]]
+    found: NDArray[np.int64] = sound[order[members]]
+    return found
 
 
 @dataclass(frozen=True, eq=False)

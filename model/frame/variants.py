@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
+from functools import partial
 
 import numpy as np
 from numpy.typing import NDArray
@@ -138,26 +139,24 @@ def _patterns(values: Values) -> tuple[dict[str, NDArray[np.int64]], dict[str, f
     index: dict[str, NDArray[np.int64]] = {}
     allowed: dict[str, frozenset[str]] = {}
 
-    def take(path: str, default: str, column_path: str) -> Choice:
+    def take(path: str, default: str, column_path: str, check: Callable[[str], None]) -> None:
         choice = values.choice(column_path, default)
+        for option in choice.options:
+            check(option)
         lookup = np.array([BRACING.index(option) for option in choice.options], dtype=np.int64)
         index[path] = lookup[choice.index]
         allowed[path] = frozenset(choice.options)
-        return choice
 
     for station in layout.stations:
         path = f"station.{station.name}.ring"
-        for option in take(path, station.ring, path).options:
-            check_ring(path, option)
+        take(path, station.ring, path, partial(check_ring, path))
     for span in layout.spans:
+        both = f"span.{span.name}.sides"
         for face in FACES:
             path = f"span.{span.name}.{face}"
-            both = f"span.{span.name}.sides"
             linked = face in ("left", "right") and path not in values.columns
-            choice = take(path, getattr(span, face), both if both in values.columns and linked
-                          else path)  # fmt: skip
-            for option in choice.options:
-                check_face(span, face, option)
+            column = both if linked and both in values.columns else path
+            take(path, getattr(span, face), column, partial(check_face, span, face))
     return index, allowed
 
 
