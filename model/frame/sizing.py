@@ -33,8 +33,9 @@ def tube_columns(values: Values, group: str, tube: Tube) -> tuple[F64, F64, F64]
     with np.errstate(divide="ignore"):
         turn = np.minimum(1 / np.maximum(rotation, 0.0), PINNED)
         pull = np.minimum(2 / np.maximum(axial, 0.0), PINNED)
-    zero = np.zeros_like(turn)
-    return rigidity, np.stack([pull, zero, turn, turn, turn, turn], axis=-1), density * s.A
+    # a pin is a ball: it frees the member's turning about itself as well
+    spin = np.where(rotation > 0, 0.0, PINNED)
+    return rigidity, np.stack([pull, spin, turn, turn, turn, turn], axis=-1), density * s.A
 
 
 def _sections(values: Values, path: str, tube: Tube) -> SectionValues:

@@ -60,9 +60,9 @@ def test_the_layout_of_a_row_equals_what_the_table_shows(vehicle: str, seed: int
     values = {f.path: f.value for f in fields(layout)}
     for path, value in shown.items():
         if isinstance(value, str):
-            assert values[path] == value
+            assert values[str(path)] == value
         else:
-            assert values[path] == pytest.approx(value, rel=1e-12)
+            assert values[str(path)] == pytest.approx(value, rel=1e-12)
 
 
 TEXT = catalogue().vehicles["orchard-truck"]

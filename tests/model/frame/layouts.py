@@ -58,7 +58,7 @@ def box(bays: int = 8, bracing: str = "open", ring: str = "single") -> Layout:
             Station("front", 0, 0.7, 0.0, 0.7, 0.5, ring=ring),
             Station("rear", 1, 0.7, 0.0, 0.7, 0.5, ring=ring),
         ),
-        spans=(Span("middle", bays, *([bracing] * 4)),),
+        spans=(Span("middle", bays, bracing, bracing, bracing, bracing),),
         tubes={
             "rails": round_tube(32, 2),
             "ring members": round_tube(25.4, 1.6),
@@ -111,7 +111,7 @@ def random_layout(rng: np.random.Generator, *, symmetric: bool = False) -> Layou
         )
         for k in range(count - 1)
     )
-    hoops = ()
+    hoops: tuple[Hoop, ...] = ()
     if rng.random() < 0.3:
         bracing = str(rng.choice(("open", "single", "cross")))
         hoops = (Hoop("hoop", "s1", 1.3, 0.5, 0.05, "s2", bracing),)

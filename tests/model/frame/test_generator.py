@@ -7,7 +7,7 @@ import pytest
 
 from model.errors import InputError
 from model.frame.layout import Hoop, Layout, Span, Station, with_span, with_station, with_tube
-from model.frame.variants import Choice, one, variants
+from model.frame.variants import Choice, Column, one, variants
 from model.results.twist import answers
 from tests.model.frame.layouts import STEEL, box, ladder, random_layout, round_tube
 
@@ -84,7 +84,7 @@ def test_variants_equal_the_layouts_built_one_by_one() -> None:
     index = np.array([0, 1, 2, 1, 0, 2])
     width = np.linspace(0.6, 0.8, 6)
     bays = np.array([2, 3, 2, 4, 3, 2])
-    columns = {
+    columns: dict[str, Column] = {
         "span.middle.floor": Choice(patterns, index),
         "span.middle.bays": bays,
         "station.rear.width_low": width,

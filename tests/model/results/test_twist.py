@@ -46,6 +46,17 @@ def test_crossed_box_check_frame() -> None:
     assert found.mass == pytest.approx(66.92, abs=5e-3)
 
 
+def test_a_braced_box_pinned_everywhere_stands_as_a_truss() -> None:
+    """Independent prototype: 0.9659 of the welded frame for the check frame's bracing."""
+    welded = box(bracing="single")
+    pinned = welded
+    for group in welded.tubes:
+        pinned = with_tube(pinned, group, rotation=0.0)
+    found = examine(pinned)
+    assert found.axial_share == pytest.approx(1.0, abs=1e-9)
+    assert found.twist / examine(welded).twist == pytest.approx(0.9659, abs=2e-3)
+
+
 def test_wheel_linkage_check_frame() -> None:
     """Couple over a hub track of 1.4 m through spring mounts and upper and lower pickups."""
     layout = Layout(**{**box().__dict__, "entry": "linkage"})
@@ -94,8 +105,8 @@ def test_lengths_times_s_give_stiffness_times_s_cubed(seed: int, s: float) -> No
         names = ("width_low", "width_high", "height_low", "height_high", "outrigger")
         big = with_station(big, station.name, **{n: getattr(station, n) * s for n in names})
     for hoop in layout.hoops:
-        names = ("height", "width", "lean")
-        big = with_hoop(big, hoop.name, **{n: getattr(hoop, n) * s for n in names})
+        shape = {n: getattr(hoop, n) * s for n in ("height", "width", "lean")}
+        big = with_hoop(big, hoop.name, **shape)
     for group, tube in layout.tubes.items():
         big = with_tube(big, group, sizes={k: v * s for k, v in tube.sizes.items()})
     small_k, big_k = (answers(one(frame), 1).twist[0] for frame in (layout, big))
