@@ -1,0 +1,30 @@
+"""The workbench: sets up the page, the way through the work and the side; a page does the rest."""
+
+import sys
+import traceback
+from pathlib import Path
+
+import streamlit as st
+
+from explorer import furniture, state
+from explorer.page_theme import watch_theme
+
+# the page server looks here first, where our modules would stand in for others of their name
+sys.path[:] = [place for place in sys.path if Path(place) != Path(__file__).parent]
+st.set_page_config(
+    page_title="Twistfront", page_icon=Path(__file__).parent / "assets" / "icon.png", layout="wide"
+)
+state.follow_address()
+page = st.navigation(
+    [
+        st.Page(f"pages/{name}.py", title=title, url_path=name, default=name == "frame")
+        for name, title in furniture.PAGES.items()
+    ]
+)
+furniture.sidebar()
+try:
+    page.run()
+except Exception as fault:  # what a person did wrong is said by the page; this is ours
+    traceback.print_exc()
+    furniture.our_fault(fault)
+watch_theme()

@@ -1,0 +1,56 @@
+"""Sweep: choose what varies, try thousands of frames, watch, stop and go on."""
+
+from __future__ import annotations
+
+import streamlit as st
+
+from explorer import furniture, results, state, sweeping, words
+from explorer.charts import front_chart, front_in_words
+from sweeps import jobs
+from sweeps.evaluate import OK
+from sweeps.sampling import Design
+
+here = state.bench()
+study, units = here.study, here.shown_units
+with furniture.telling():
+    run = results.run_on_bench()
+job = sweeping.active(run)
+same = run is not None and sweeping.same_sweep(run, study)
+rows = Design(len(study.inputs), study.samples, True, study.seed).rows if study.inputs else 0
+failed = 0
+if run is not None and job is None and run.rows_solved:
+    failed = int((results.table(run)["status"] != OK).sum())
+
+furniture.opening(
+    "Sweep",
+    words.sweep_opening(study, rows, run, same=same, failed=failed, active=job is not None),
+)
+sweeping.furnish_trouble()
+
+if run is not None and job is not None:
+    sweeping.watch(run)
+elif run is not None:
+    ended = jobs.find(run.folder)
+    if ended is not None and ended.progress.message:
+        st.error(words.plain(ended.progress.message))
+    if run.rows_solved:
+        solved, best = results.solved(run), results.front_of(run)
+        furniture.chart(
+            front_chart(solved, best.rows, units=units, dark=furniture.dark(), height=300),
+            front_in_words(solved, best.rows, units=units),
+        )  # fmt: skip
+
+what, how = st.columns([1.9, 1], gap="large")
+with what:
+    st.subheader("What varies", anchor=False)
+    sweeping.ranges(study, units)
+    sweeping.choices(study)
+    sweeping.add_input(study)
+with how:
+    st.subheader("How many", anchor=False)
+    sweeping.run_panel(study, run, job is not None, same)
+
+sweeping.earlier()
+if run is not None and run.complete and job is None:
+    furniture.next_step("drivers", "See what drives it",
+                        "Which of these inputs moves stiffness and mass.")  # fmt: skip

@@ -1,0 +1,335 @@
+"""The parts of the Sweep page: ranges and choices to edit, a sweep under way, earlier sweeps."""
+
+from __future__ import annotations
+
+import datetime
+from collections.abc import Callable
+from dataclasses import replace
+from typing import Any
+
+import pandas as pd
+import streamlit as st
+
+from explorer import furniture, results, state, varying, words
+from explorer.form import rounded
+from explorer.numbers import count
+from explorer.units import Units
+from model.errors import DesignError
+from sweeps import jobs
+from sweeps.inputs import Input, option_label
+from sweeps.runs import Run, RunError, digest, prepare
+from sweeps.study import Study, fields
+
+SAMPLES = tuple(2**k for k in range(5, 17))
+"""Base samples that are offered."""
+LOOK_AGAIN = 0.5
+"""Seconds between two looks at a sweep under way."""
+
+
+# --- what varies ----------------------------------------------------------------------------
+
+
+def ranges(study: Study, units: Units) -> None:
+    """The inputs with a range, as a table to edit; unticked ones are held fixed."""
+    here = state.bench()
+    shown = [given for given in study.inputs if not given.is_choice]
+    if not shown:
+        return
+    now = {f.path: f.value for f in fields(study.layout)}
+    quantities = [_quantity(given) for given in shown]
+    key = f"ranges {here.units} {here.revision}"
+    rows = pd.DataFrame(
+        {
+            "Vary": True,
+            "Input": [given.label for given in shown],
+            "From": [_shown(given.low, q, units) for given, q in zip(shown, quantities,
+                     strict=True)],
+            "To": [_shown(given.high, q, units) for given, q in zip(shown, quantities,
+                   strict=True)],
+            "Unit": [units.unit(q) if q != "none" else "wheelbases" for q in quantities],
+            "Frame has": [_shown(now.get(given.path), q, units) for given, q in
+                          zip(shown, quantities, strict=True)],
+        }
+    )  # fmt: skip
+
+    def take() -> None:
+        changed = study
+        for at, cells in st.session_state[key]["edited_rows"].items():
+            given, quantity = shown[int(at)], quantities[int(at)]
+            if cells.get("Vary") is False:
+                changed = changed.without_input(given.path)
+                continue
+            low, high = (
+                units.stored(float(cells[side]), quantity) if cells.get(side) is not None else old
+                for side, old in (("From", given.low), ("To", given.high))
+            )
+            changed = varying.with_range(changed, given.path, low, high)
+        state.put(changed)
+
+    st.data_editor(
+        rows,
+        key=key,
+        on_change=guarded(take),
+        hide_index=True,
+        disabled=("Input", "Unit", "Frame has"),
+        width="stretch",
+        height=38 + 35 * len(shown),
+        alt="Inputs that vary over a range, with from, to, unit and the value of the frame.",
+        column_config={
+            "Vary": st.column_config.CheckboxColumn("Vary", width=50),
+            "Input": st.column_config.TextColumn("Over a range", width="medium"),
+            "From": st.column_config.NumberColumn(width="small", format="%.6g"),
+            "To": st.column_config.NumberColumn(width="small", format="%.6g"),
+            "Unit": st.column_config.TextColumn(width=60),
+            "Frame has": st.column_config.NumberColumn(width="small", format="%.6g"),
+        },
+    )
+
+
+def choices(study: Study) -> None:
+    """The inputs that are choices, each with its options to tick."""
+    here = state.bench()
+    for given in study.inputs:
+        if not given.is_choice:
+            continue
+        key = f"options {given.path} {here.revision}"
+        options = {said(option): option for option in varying.possible(study.layout, given)}
+
+        def take(path: str = given.path, key: str = key, options: dict[str, Any] = options) -> None:
+            chosen = [options[name] for name in st.session_state[key]]
+            state.put(varying.with_options(study, path, chosen), anew=len(chosen) < 2)
+
+        st.multiselect(
+            words.plain(given.label),
+            list(options),
+            default=[said(option) for option in given.options],
+            key=key,
+            on_change=guarded(take),
+            placeholder="Held as the frame has it",
+        )
+
+
+def add_input(study: Study) -> None:
+    """A further input, with a range to begin with."""
+    found = {f.path: f.label for f in varying.addable(study)}
+    here = state.bench()
+    key = f"add input {here.revision}"
+
+    def take() -> None:
+        path = st.session_state[key]
+        if path is not None:
+            usual = state.original()
+            state.put(study.with_input(varying.first_input(study.layout, path, usual)))
+
+    st.selectbox(
+        "Vary something else as well",
+        list(found),
+        index=None,
+        format_func=lambda path: found[path],
+        placeholder="Choose a dimension, bracing or tube",
+        key=key,
+        on_change=guarded(take),
+    )
+
+
+def said(option: Any) -> str:
+    """An option as a person reads it: "25 x 1.5", "cross", "3"."""
+    label = str(option_label(option))
+    return label.partition("/")[2] or label
+
+
+def guarded(take: Callable[[], None]) -> Callable[[], None]:
+    """A callback that puts a fault on the bench instead of raising it; fields show anew."""
+
+    def safely() -> None:
+        here = state.bench()
+        here.fault = None
+        try:
+            take()
+        except DesignError as fault:
+            here.trouble = fault
+            here.revision += 1
+
+    return safely
+
+
+def _quantity(given: Input) -> str:
+    return "length" if given.unit == "mm" else "none"
+
+
+def _shown(value: Any, quantity: str, units: Units) -> float | None:
+    return None if value is None else rounded(units.shown(float(value), quantity))
+
+
+# --- run it ---------------------------------------------------------------------------------
+
+
+def same_sweep(run: Run, study: Study) -> bool:
+    """Whether a run is of this very study, whatever the number of samples."""
+    return bool(run.facts().get("digest") == digest(study, run.second_order))
+
+
+def start(study: Study, run: Run | None) -> None:
+    """Start a sweep; one of the same study goes on in its folder and keeps what is solved."""
+    begun: Run | None = None
+    if run is not None and same_sweep(run, study):
+        try:
+            begun = prepare(study, run.folder, run.second_order)
+        except RunError:  # too few samples to build on: a new sweep is as quick
+            begun = None
+    if begun is None:
+        now = datetime.datetime.now()
+        name = f"{words.file_name(study.name)}-{now:%Y%m%d-%H%M%S}"
+        begun = prepare(study, state.run_folder(name))
+    jobs.start(begun)
+    state.use_run(begun.name)
+
+
+def resume(run: Run) -> None:
+    """Go on with a sweep that was stopped."""
+    jobs.start(run)
+
+
+def active(run: Run | None) -> jobs.Job | None:
+    """The job that works on a run now, if there is one."""
+    job = None if run is None else jobs.find(run.folder)
+    return job if job is not None and job.active else None
+
+
+def watch(run: Run) -> None:
+    """Progress of a sweep under way; looks again by itself, and shows the page anew at the end."""
+
+    @st.fragment(run_every=LOOK_AGAIN)
+    def look() -> None:
+        job = jobs.find(run.folder)
+        if job is None or not job.active:
+            st.rerun(scope="app")
+        p = job.progress
+        with st.container(border=True):
+            st.progress(min(p.share, 1.0), words.progress(p))
+            if st.button("Cancel", icon=":material/stop_circle:", key="cancel"):
+                job.cancel()
+            st.caption("What is solved stays. You may close the page: the sweep goes on.")
+
+    look()
+
+
+def earlier() -> None:
+    """Sweeps on disk; one can be opened."""
+    here = state.bench()
+    found = results.earlier_runs()
+    others = [shelved for shelved in found if shelved.name != here.run]
+    if not others:
+        return
+    now = datetime.datetime.now()
+    with st.expander(f"Earlier sweeps ({len(others)})"):
+        rows = pd.DataFrame(
+            {
+                "Vehicle": [s.vehicle for s in others],
+                "When": [words.moment(s.when, now) for s in others],
+                "Frames": [s.rows for s in others],
+                "Inputs": [s.inputs for s in others],
+                "State": ["complete" if s.complete else f"{s.solved / s.rows:.0%} solved"
+                          for s in others],
+            }
+        )  # fmt: skip
+        event = st.dataframe(
+            rows,
+            key=f"earlier {here.run} {len(others)}",
+            hide_index=True,
+            width="stretch",
+            on_select="rerun",
+            selection_mode="single-row",
+            column_config={"Frames": st.column_config.NumberColumn(format="localized")},
+        )
+        chosen = event["selection"]["rows"]
+        if st.button("Open the one ticked", disabled=not chosen):
+            open_earlier(others[chosen[0]].name)
+            st.rerun()
+
+
+def open_earlier(name: str) -> None:
+    """Put an earlier sweep on the bench, and the study it was made of with it."""
+    state.use_run(name)
+    run = results.run_on_bench()
+    if run is not None and not same_sweep(run, state.bench().study):
+        state.put_other(run.study)
+
+
+def extent(study: Study, trial: results.Trial | None) -> str:
+    """How many frames a sweep makes and how long it will take."""
+    from sweeps.sampling import Design
+
+    rows = Design(len(study.inputs), study.samples, True, study.seed).rows
+    text = f"**{count(rows, 'frame')}**"
+    if trial is None:
+        return text + "."
+    return f"{text}, about {words.duration(rows / trial.rate)} here."
+
+
+def refused_ahead(trial: results.Trial) -> str:
+    """What part of the ranges cannot be built, if any."""
+    if not trial.failed:
+        return ""
+    return (
+        f"About {trial.failed / trial.frames:.0%} of these frames cannot be solved, most often "
+        f"because {words.plain(trial.reason)}. Narrow the ranges, or let them be left out."
+    )
+
+
+def furnish_trouble() -> None:
+    """Say what the last edit could not do."""
+    here = state.bench()
+    if here.trouble is not None:
+        furniture.problem(here.trouble)
+        here.trouble = None
+
+
+def run_panel(study: Study, run: Run | None, busy: bool, same: bool) -> None:
+    """How many frames, how long, and the one button that fits how things stand."""
+    here = state.bench()
+    key = f"samples {here.revision}"
+    st.select_slider(
+        "Base samples",
+        sorted({*SAMPLES, study.samples}),
+        value=study.samples,
+        format_func=lambda n: f"{n:,}",
+        key=key,
+        on_change=guarded(
+            lambda: state.put(replace(study, samples=st.session_state[key]), anew=False)
+        ),
+        help="The more, the surer the ranking of the drivers. A power of two.",
+    )
+    if not study.inputs:
+        st.warning("Nothing varies yet: tick an input, or add one.")
+        return
+    with furniture.telling():
+        ahead = results.trial(study)
+    st.markdown(extent(study, ahead))
+    note = refused_ahead(ahead)
+    if note:
+        st.caption(note)
+    label, icon = _what_next(study, run, same)
+    if label and st.button(label, type="primary", icon=icon, disabled=busy, width="stretch"):
+        with furniture.telling():
+            start(study, run)
+        st.rerun()
+    if run is not None and same and run.complete and not busy:
+        double = replace(study, samples=2 * run.study.samples)
+        if st.button("Double the samples", icon=":material/add_circle:", width="stretch"):
+            with furniture.telling():
+                state.put(double)
+                start(double, run)
+            st.rerun()
+        st.caption("Keeps every frame already solved.")
+
+
+def _what_next(study: Study, run: Run | None, same: bool) -> tuple[str, str]:
+    """Label and icon of the button; no label where there is nothing to start."""
+    if run is None or not same:
+        return "Run the sweep", ":material/play_arrow:"
+    if study.samples > run.study.samples:
+        return f"Extend to {study.samples:,} samples", ":material/add_circle:"
+    if not run.complete:
+        return "Resume the sweep", ":material/play_arrow:"
+    return "", ""
