@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import argparse
+import json
 import os
 import socket
 import sys
@@ -79,7 +80,7 @@ def theme_options() -> dict[str, str | tuple[str, ...]]:
             f"theme.{look}.textColor": colours.ink,
             f"theme.{look}.linkColor": colours.accent,
             f"theme.{look}.borderColor": colours.rule,
-            f"theme.{look}.chartCategoricalColors": colours.palette,
+            f"theme.{look}.chartCategoricalColors": json.dumps(colours.palette),
         }
     return options
 
