@@ -17,7 +17,7 @@ st.set_page_config(
 state.follow_address()
 page = st.navigation(
     [
-        st.Page(f"pages/{name}.py", title=title, url_path=name, default=name == "frame")
+        st.Page(f"steps/{name}.py", title=title, url_path=name, default=name == "frame")
         for name, title in furniture.PAGES.items()
     ]
 )

@@ -97,7 +97,7 @@ def next_step(page: str, label: str, why: str = "") -> None:
 
 def go(page: str) -> None:
     """Go to another page with everything that is on the bench."""
-    st.switch_page(f"pages/{page}.py", query_params=state.address())
+    st.switch_page(f"steps/{page}.py", query_params=state.address())
 
 
 def chart(picture: alt.LayerChart, said: str, **more: Any) -> Any:

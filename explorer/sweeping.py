@@ -76,12 +76,12 @@ def ranges(study: Study, units: Units) -> None:
         height=38 + 35 * len(shown),
         alt="Inputs that vary over a range, with from, to, unit and the value of the frame.",
         column_config={
-            "Vary": st.column_config.CheckboxColumn("Vary", width=50),
-            "Input": st.column_config.TextColumn("Over a range", width="medium"),
-            "From": st.column_config.NumberColumn(width="small", format="%.6g"),
-            "To": st.column_config.NumberColumn(width="small", format="%.6g"),
+            "Vary": st.column_config.CheckboxColumn("Vary", width=80),
+            "Input": st.column_config.TextColumn("Over a range", width=260),
+            "From": st.column_config.NumberColumn(width=85, format="%.6g"),
+            "To": st.column_config.NumberColumn(width=85, format="%.6g"),
             "Unit": st.column_config.TextColumn(width=60),
-            "Frame has": st.column_config.NumberColumn(width="small", format="%.6g"),
+            "Frame has": st.column_config.NumberColumn(width=85, format="%.6g"),
         },
     )
 
@@ -89,9 +89,8 @@ def ranges(study: Study, units: Units) -> None:
 def choices(study: Study) -> None:
     """The inputs that are choices, each with its options to tick."""
     here = state.bench()
-    for given in study.inputs:
-        if not given.is_choice:
-            continue
+    columns = st.columns(2, wrap=True)
+    for place, given in enumerate(given for given in study.inputs if given.is_choice):
         key = f"options {given.path} {here.revision}"
         options = {said(option): option for option in varying.possible(study.layout, given)}
 
@@ -99,7 +98,7 @@ def choices(study: Study) -> None:
             chosen = [options[name] for name in st.session_state[key]]
             state.put(varying.with_options(study, path, chosen), anew=len(chosen) < 2)
 
-        st.multiselect(
+        columns[place % 2].multiselect(
             words.plain(given.label),
             list(options),
             default=[said(option) for option in given.options],

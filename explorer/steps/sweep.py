@@ -40,7 +40,7 @@ elif run is not None:
             front_in_words(solved, best.rows, units=units),
         )  # fmt: skip
 
-what, how = st.columns([1.9, 1], gap="large")
+what, how = st.columns([2.4, 1], gap="large")
 with what:
     st.subheader("What varies", anchor=False)
     sweeping.ranges(study, units)
