@@ -29,7 +29,7 @@ def frame_record(detail: Detail) -> dict[str, Any]:
         "mass_kg": detail.mass,
         "twist_Nm_per_deg": detail.twist,
         "bend_N_per_mm": detail.bend,
-        "twist_per_kg_Nm_per_deg": detail.twist / detail.mass,
+        "twist_Nm_per_deg_per_kg": detail.twist / detail.mass,
         "axial_share": detail.axial_share,
         "stock_m": float(detail.answers.stock[0]),
         "joints": len(detail.bill.joints),
