@@ -54,7 +54,7 @@ def _size_slopes(detail: Detail) -> list[Slope]:
     batch, layout = detail.batch, detail.layout
     skeleton = batch.skeleton
     length = np.where(batch.present[0], batch.lengths()[0], 0.0)
-    energy = _energy_by_rigidity(batch, detail.displacement)
+    energy = energy_by_rigidity(batch, detail.displacement)
     found = []
     for g, group in enumerate(skeleton.groups):
         tube = layout.tubes[group]
@@ -77,7 +77,7 @@ def _size_slopes(detail: Detail) -> list[Slope]:
     return found
 
 
-def _energy_by_rigidity(batch: Batch, moved: F64) -> F64:
+def energy_by_rigidity(batch: Batch, moved: F64) -> F64:
     """(members, 6) strain energy [J] stored in A, Iy, Iz, J, Asy and Asz."""
     skeleton = batch.skeleton
     i, j = skeleton.members.T
