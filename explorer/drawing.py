@@ -146,7 +146,7 @@ class FrameDrawing:
     joint_names, sizes : a name a joint, a tube size a member ("25 x 1.5"); may be left out.
     present : (members,) bool, False for a brace that is left out; all when None.
     pickups : joints that take suspension load. axles : x of the front and rear axle [m].
-    picked_out : names of members or groups to be stressed.
+    picked_out : names of members or groups to be stressed; of those not present, an outline.
     """
 
     title: str

@@ -30,6 +30,8 @@ class Painter {
     const bars = this.project(joints, lens);
     for (const bar of bars) this.tube(bar);
     for (const bar of bars) if (this.stressed(bar.member)) this.halo(bar);
+    const missing = data.picked_out.map((out, m) => out && !data.shown[m]); // a brace to be added
+    this.outline(joints, data.members, missing, lens, look.accent, [8, 5], 3);
     if (ghost && !ghost.swings) {
       const shown = ghost.members ? null : data.shown;
       this.outline(ghost.joints, ghost.members || data.members, shown, lens, look.accent, [6, 4]);
@@ -130,12 +132,12 @@ class Painter {
     pen.setLineDash([]);
   }
 
-  outline(joints, members, shown, lens, colour, dash) {
+  outline(joints, members, shown, lens, colour, dash, width = 1.2) {
     const at = joints.map(lens);
     members.forEach(([from, to], m) => {
       if (shown && !shown[m]) return;
       const [[x1, y1], [x2, y2]] = [at[from], at[to]];
-      this.line({ x1, y1, x2, y2 }, 1.2, colour, dash);
+      this.line({ x1, y1, x2, y2 }, width, colour, dash);
     });
   }
 

@@ -40,11 +40,17 @@ def drivers_chart(
         title=None,
         labelFontSize=13,
         labelFontWeight=cast(Any, weight),
-        labelPadding=10,
+        labelColor=look.ink,
+        labelLimit=420,
+        labelAlign="left",  # above its bars: long names leave the bars their room
+        labelPadding=-2,
+        labelOffset=-22,
         domain=False,
         ticks=False,
+        zindex=1,
     )
-    y = alt.Y("label:N", sort=order, axis=names, scale=alt.Scale(paddingInner=0.3))
+    gaps = alt.Scale(paddingInner=0.46, paddingOuter=0.46)
+    y = alt.Y("label:N", sort=order, axis=names, scale=gaps)
     offset = alt.YOffset("which:N", sort=[TOTAL, ALONE])
     title = "Share of the variation explained"
     lowest, highest = min(0.0, float(bars["low"].min())), float(bars["high"].max())
@@ -74,7 +80,7 @@ def drivers_chart(
         .encode(x="high:Q", text="share:N")
     )
     rows = max(len(top), 1)
-    return dressed([drawn.add_params(click), whisker, written], dark, 60 + 38 * rows)
+    return dressed([drawn.add_params(click), whisker, written], dark, 90 + 48 * rows)
 
 
 def input_clicked(event: Mapping[str, Any] | None) -> str | None:
@@ -143,7 +149,7 @@ def response_chart(
     else:
         band = base.mark_area(color=look.accent, opacity=0.2, line=False)
         line = base.mark_line(
-            color=look.accent, strokeWidth=2.4, point={"size": 34, "filled": True}
+            color=look.accent, strokeWidth=2.4, point={"size": 34, "filled": True, "opacity": 1}
         )
     layers = [band.encode(y=y, y2="high:Q"), line.encode(y=middle)]
     return dressed(layers, dark, height)

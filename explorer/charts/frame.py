@@ -187,7 +187,7 @@ def _stacked(table: pd.DataFrame, order: list[str]) -> pd.DataFrame:
                     "end": end,
                     "middle": end - share / 2,
                     "written": percent(share),
-                    "inside": percent(share) if share > 0.075 * longest else "",
+                    "inside": percent(share) if share > 0.1 * longest else "",
                     "total": percent(float(ends.loc[group].iloc[-1])),
                     "said": f"{group}, {kind}: {percent(share)}",
                 }
