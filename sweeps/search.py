@@ -171,11 +171,19 @@ def least_mass(problem: Sizing, target: float, start: F64 | None = None) -> Leas
                     "jac": lambda _, s=slope: s,
                 }
             )
+
+    def cost(v: F64) -> float:
+        return float(np.log(problem.evaluate(v)[0]))
+
+    def cost_slope(v: F64) -> F64:
+        mass, slope, _, _ = problem.evaluate(v)
+        return slope / mass
+
     found = minimize(
-        lambda v: np.log(problem.evaluate(v)[0]),
+        cost,
         np.clip(x, problem.low, problem.high),
-        jac=lambda v: problem.evaluate(v)[1] / problem.evaluate(v)[0],
-        bounds=list(zip(problem.low, problem.high, strict=True)),
+        jac=cost_slope,
+        bounds=list(zip(problem.low.tolist(), problem.high.tolist(), strict=True)),
         constraints=constraints,
         method="SLSQP",
         options={"ftol": 1e-10, "maxiter": 200},
