@@ -46,7 +46,7 @@ LIGHT = Colours(
     rule="#DBD8D0",
     accent="#2B6CA3",
     warning="#98330F",
-    palette=("#2B6CA3", "#98330F", "#1F9083", "#5E2A77", "#94780A", "#1E2A33"),
+    palette=("#2B6CA3", "#98330F", "#219688", "#5E2A77", "#94780A", "#1E2A33"),
     ramp=("#D5CFC0", "#DDB877", "#D98A45", "#B9532F", "#83243A", "#4A1033"),
     tube="#71808D",
     quiet="#858D95",
@@ -60,7 +60,7 @@ DARK = Colours(
     accent="#6FB0E6",
     warning="#EE9068",
     palette=("#5793C8", "#EE9068", "#7DE8D2", "#C3A5F2", "#F6DA6A", "#C2593F"),
-    ramp=("#505D75", "#7A5B8F", "#B2587F", "#E06C5A", "#F2A24C", "#FBE28A"),
+    ramp=("#4C586F", "#7A5B90", "#BA607E", "#E4735B", "#F2A24C", "#FBE28A"),
     tube="#9AA9B6",
     quiet="#76828E",
 )
@@ -73,7 +73,10 @@ def colours(dark: bool) -> Colours:
 
 def as_data(dark: bool) -> dict[str, object]:
     """The set as plain data, for the canvas."""
-    return asdict(colours(dark))
+    return {
+        name: list(value) if isinstance(value, tuple) else value
+        for name, value in asdict(colours(dark)).items()
+    }
 
 
 def mixed(first: str, second: str, part: float) -> str:

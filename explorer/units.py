@@ -108,7 +108,6 @@ INCH_POUND = Units(
 SYSTEMS = (METRIC, INCH_POUND)
 
 _ENDINGS = (
-    ("_Nm_per_deg_per_kg", "twist per mass"),
     ("_Nm_per_deg", "twist"),
     ("twist_per_kg", "twist per mass"),
     ("_N_per_mm", "bend"),
@@ -138,16 +137,15 @@ _WORDS = {
 def quantity_of(column: str) -> str:
     """Which quantity a column of a table holds, by the unit at the end of its name."""
     for ending, quantity in _ENDINGS:
-        if column.endswith(ending) or (ending == "twist_per_kg" and ending in column):
+        if column.endswith(ending):
             return quantity
     return "none"
 
 
 def words_of(column: str) -> str:
     """A column of results in words: "Twist stiffness"; other names without unit and dots."""
-    for name, words in _WORDS.items():
-        if column == name or (name == "twist_per_kg" and column.startswith(name)):
-            return words
+    if column in _WORDS:
+        return _WORDS[column]
     for ending, _ in _ENDINGS:
         column = column.removesuffix(ending)
     plain = column.replace("_", " ").replace(".", ", ")
