@@ -4,8 +4,9 @@ A block below the diagonal is 36 vectors, row by row. A block on the diagonal is
 triangle, 21 vectors, row by row; once factored it holds L with 1/L on its own diagonal, so that
 nothing divides afterwards. A joint's forces or displacements are 6 vectors.
 
-Partial results stay in registers: while the products for three rows of a block (18 sums) are
-subtracted, and until they have been divided by the diagonal block, nothing goes to memory.
+Partial results stay in registers: while products are subtracted from some rows of a block, and
+until these have been divided by the diagonal block, nothing goes to memory. More rows at once
+than the registers hold cost a third of the speed.
 """
 
 from __future__ import annotations
@@ -18,13 +19,16 @@ from model.solver.vector import Code, Number, Places, Strip, Sums, vector_code
 SIZE = 6
 BLOCK = SIZE * SIZE
 TRIANGLE = SIZE * (SIZE + 1) // 2
-ROWS_AT_ONCE = 3
-"""Rows of a block in registers together; with 16 registers instead of 32 they spill a little."""
 
 
 def low(a: int, b: int) -> int:
     """Place of entry (a, b), b <= a, in a lower triangle."""
     return a * (a + 1) // 2 + b
+
+
+def _roomy(code: Code) -> bool:
+    """Whether there are 32 registers, not 16; all processors with 8 lanes in each have them."""
+    return code.width >= 8
 
 
 @vector_code
@@ -54,13 +58,14 @@ def factor_diagonal(
         for b in range(a):
             c[low(a, b)] = block[low(a, b)]
         c[low(a, a)] = assembled[a] = none.pick(1.0, stiff[a])
-    with code.each(start, stop) as entry:
-        other = left.strip(entry)
-        for k in range(SIZE):
-            column = [other[SIZE * a + k] for a in range(SIZE)]
-            for a in range(SIZE):
-                for b in range(a + 1):
-                    c[low(a, b)] = c[low(a, b)] - column[a] * column[b]
+    for rows in (range(SIZE),) if _roomy(code) else (range(4), range(4, SIZE)):
+        with code.each(start, stop) as entry:
+            other = left.strip(entry)
+            for k in range(SIZE):
+                column = [other[SIZE * a + k] for a in range(rows.stop)]
+                for a in rows:
+                    for b in range(a + 1):
+                        c[low(a, b)] = c[low(a, b)] - column[a] * column[b]
     bad = status[0]
     for a in range(SIZE):
         pivot = c[low(a, a)]
@@ -93,8 +98,8 @@ def factor_below(
 
     filled : 1 when the block has no stiffness of its own and is to start from zero.
     """
-    for top in range(0, SIZE, ROWS_AT_ONCE):
-        rows = range(min(ROWS_AT_ONCE, SIZE - top))
+    rows = range(3 if _roomy(code) else 2)
+    for top in range(0, SIZE, len(rows)):
         c = Sums(code, len(rows) * SIZE)
         with code.when(filled.is_zero()) as (then, otherwise):
             with then:
