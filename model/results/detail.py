@@ -134,6 +134,6 @@ def bay_words(detail: Detail) -> str:
     part = angle[worst] * detail.twist / PER_DEGREE
     return (
         f"It twists most for its length between {found.names[worst]} and "
-        f"{found.names[worst + 1]}: {part:.0%} of the twist over "
+        f"{found.names[worst + 1]}: {100 * part:.0f} % of the twist over "
         f"{(found.x[worst + 1] - found.x[worst]) * 1e3:.0f} mm."
     )
