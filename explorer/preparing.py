@@ -95,9 +95,9 @@ def _make(venv: Path, root: Path, needs: Needs, lock: int) -> None:
         and state.python == python_tag()
         and python_of(venv).exists()
     )
-    say(f"Twistfront {_reason(state, usable, needs)}. This takes a minute or two.")
+    say(f"Twistfront {_reason(state, usable, needs)}. This takes about a minute.")
     say(f"  what:  {_how_many(pins)} packages from {pins}, each checked against its hash")
-    say(f"  where: {venv} (delete that folder to undo; nothing else is changed)")
+    say(f"  where: {venv} (about 1 GB; delete the folder to undo, nothing else changes)")
     if not usable:
         _check_python()
         _clear(venv)
@@ -108,6 +108,7 @@ def _make(venv: Path, root: Path, needs: Needs, lock: int) -> None:
     if not usable:
         _create(venv, root)
     _install(venv, pins, lock)
+    _compile(venv)
     lists = {name: digest(root / name) for name in LISTS[needs]}
     _write_state(venv, State(python_tag(), kept | lists, unfinished=False))
     say(f"Ready after {time.monotonic() - began:.0f} s. The next start is quick.")
@@ -158,9 +159,7 @@ def _create(venv: Path, root: Path) -> None:
         virtual.create(venv, with_pip=True, symlinks=os.name != "nt")
     except (OSError, subprocess.CalledProcessError) as error:
         sys.exit(f"The virtual environment could not be made in {venv}: {error}")
-    major, minor = sys.version_info[:2]
-    library = "Lib" if os.name == "nt" else f"lib/python{major}.{minor}"
-    packages = venv / library / "site-packages"
+    packages = _packages(venv)
     path = root
     if venv.parent == root:  # a relative path survives a move of the checkout
         path = Path(*[".."] * len(packages.relative_to(root).parts))
@@ -169,8 +168,8 @@ def _create(venv: Path, root: Path) -> None:
 
 def _install(venv: Path, pins: Path, lock: int) -> None:
     command = [str(python_of(venv)), "-I", "-m", "pip", "install", "--require-hashes"]
-    command += ["--only-binary=:all:", "--disable-pip-version-check", "--no-input"]
-    command += ["--progress-bar=off", "-r", str(pins)]
+    command += ["--only-binary=:all:", "--no-compile", "--no-input"]
+    command += ["--disable-pip-version-check", "--progress-bar=off", "-r", str(pins)]
     environment = os.environ | {"PIP_USER": "0", "PYTHONUNBUFFERED": "1"}
     said: deque[str] = deque(maxlen=400)
     with subprocess.Popen(
@@ -201,6 +200,25 @@ def _install(venv: Path, pins: Path, lock: int) -> None:
         _explain(list(said))
 
 
+def _compile(venv: Path) -> None:
+    """Compile to byte code on all cores: pip, told not to, would do it on one, tests and all.
+
+    Only a matter of speed: what is missing, Python compiles when it is first imported.
+    """
+    _show("Compiling", 0)
+    command = [str(python_of(venv)), "-I", "-m", "compileall", "-qq", "-j", "0"]
+    command += ["-x", r"site-packages.*[\\/]tests?[\\/]", str(_packages(venv))]
+    subprocess.run(command, stdin=subprocess.DEVNULL, capture_output=True, check=False)
+    _show("", 0)
+
+
+def _packages(venv: Path) -> Path:
+    """Where the environment keeps its packages."""
+    major, minor = sys.version_info[:2]
+    library = "Lib" if os.name == "nt" else f"lib/python{major}.{minor}"
+    return venv / library / "site-packages"
+
+
 def _show(line: str, got: int) -> None:
     """One line that changes in place, for a person who watches."""
     if not sys.stderr.isatty():
@@ -209,6 +227,8 @@ def _show(line: str, got: int) -> None:
         text = f"  {got}: {line.split()[1].partition('=')[0]}"
     elif line.startswith("Installing collected"):
         text = f"  unpacking {got} packages"
+    elif line.startswith("Compiling"):
+        text = "  compiling"
     elif line:
         return
     else:
