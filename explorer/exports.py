@@ -7,7 +7,6 @@ import io
 from collections.abc import Iterable, Sequence
 
 import numpy as np
-from ezdxf.filemanagement import new as new_drawing
 
 from model.frame.batch import Batch
 from model.frame.bill import Bill
@@ -108,6 +107,8 @@ def _harmless(value: object) -> object:
 
 def centre_lines_dxf(batch: Batch) -> str:
     """Member centre lines of the first frame as a DXF drawing in millimetres, a layer a group."""
+    from ezdxf.filemanagement import new as new_drawing  # slow to load, seldom needed
+
     document = new_drawing("R2010", setup=True)
     document.header["$INSUNITS"] = 4  # millimetres
     space = document.modelspace()

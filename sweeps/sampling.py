@@ -12,7 +12,6 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from SALib.sample import sobol
 
 from model.errors import InputError
 
@@ -48,6 +47,8 @@ class Design:
 
     def unit(self) -> F64:
         """(rows, inputs) points in the unit cube."""
+        from SALib.sample import sobol  # slow to load
+
         problem = {
             "num_vars": self.inputs,
             "names": [f"x{k}" for k in range(self.inputs)],
