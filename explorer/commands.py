@@ -7,22 +7,21 @@ import os
 import shlex
 import sys
 import traceback
-from collections.abc import Callable, Iterator, Mapping, Sequence
-from contextlib import contextmanager
+from collections.abc import Callable, Mapping, Sequence
 from pathlib import Path
-from typing import Any, NoReturn
+from typing import TYPE_CHECKING, Any, NoReturn
 
-from explorer import __version__
+from explorer import __version__, filing
 from model.errors import DesignError, InputError
+
+if TYPE_CHECKING:
+    from sweeps.study import Study
 
 DONE, OUR_FAULT, BAD_INPUT, STOPPED = 0, 1, 2, 130
 """Exit codes."""
 
 DEBUG = "TWISTFRONT_DEBUG"
 """Environment variable that asks for a traceback when the fault is ours."""
-
-LARGEST_FILE = 64_000_000
-"""A file to be read holds at most so many bytes."""
 
 
 def main(argv: Sequence[str] | None = None) -> int:
@@ -73,10 +72,10 @@ def _run(arguments: list[str]) -> int:
 
 
 def _solve(chosen: argparse.Namespace) -> int:
-    from explorer.accounts import solved_text
+    from explorer.solved_text import solved_text
     from model.solver.frame_file import solve_file
 
-    answer = solve_file(_read("FRAME.json", chosen.frame_file), chosen.modes)
+    answer = solve_file(filing.read("FRAME.json", chosen.frame_file), chosen.modes)
     _answer(chosen, answer, lambda: solved_text(answer))
     return DONE
 
@@ -88,12 +87,11 @@ def _frame(chosen: argparse.Namespace) -> int:
     from explorer.handover import frame_file
     from explorer.subjects import starting_frame, starting_values
     from model.results.detail import examine
-    from sweeps.study_file import read_study
 
-    study = read_study(chosen.study)
+    study = _study(chosen.study)
     detail = examine(study.layout)
     if chosen.export is not None:
-        _write("--export", {chosen.export: frame_file(detail, starting_frame(study))})
+        filing.write("--export", {chosen.export: frame_file(detail, starting_frame(study))})
     record = {
         "name": study.name,
         "about": study.about,
@@ -113,13 +111,13 @@ def _sweep(chosen: argparse.Namespace) -> int:
     from explorer.run_accounts import sweep_record, sweep_text
     from explorer.terminal import Progress
     from sweeps import jobs, runs
-    from sweeps.study_file import read_study
 
-    study = read_study(chosen.study)
+    study = _study(chosen.study)
     change = {"samples": chosen.samples, "seed": chosen.seed, "method": chosen.method}
     study = replace(study, **{key: value for key, value in change.items() if value is not None})
-    with _naming("--into", chosen.into):
-        run = runs.prepare(study, chosen.into)
+    if Path(chosen.into).exists() and not Path(chosen.into).is_dir():
+        raise InputError("--into", repr(chosen.into), "is no folder; name a new or empty one")
+    run = runs.prepare(study, chosen.into)
     line = Progress("Frames solved")
     with Interrupt() as stop:
         ended = jobs.carry_out(run, lambda p: line.show(p.solved, p.rows), stop)
@@ -165,7 +163,7 @@ def _detail(chosen: argparse.Namespace) -> int:
     detail = detail_of(run, chosen.frame)
     subject = frame_of_run(run, chosen.frame)
     into = Path(chosen.into)
-    _write("--into", {into / name: text for name, text in files(detail, subject).items()})
+    filing.write("--into", {into / name: text for name, text in files(detail, subject).items()})
     row = row_of(run, chosen.frame)
     record = {
         "name": subject.name,
@@ -276,42 +274,21 @@ def _number(field: str) -> Callable[[str], float]:
 # --- files and lines ------------------------------------------------------------------------
 
 
-def _read(field: str, name: str) -> str:
-    """The text of a file, or of stdin for ``-``."""
-    with _naming(field, name):
-        data = sys.stdin.buffer.read() if name == "-" else _bytes(Path(name))
-    if len(data) > LARGEST_FILE:
-        raise InputError(field, repr(name), f"give a file of at most {LARGEST_FILE // 10**6} MB")
+def _study(name: str) -> Study:
+    """The study in a file, on stdin for ``-``, or of a starting vehicle."""
+    from sweeps.catalogue import catalogue
+    from sweeps.study_file import parse_study
+
+    shelf = catalogue()
+    if name in shelf.vehicles:
+        return parse_study(shelf.vehicles[name], shelf)
+    if name != "-" and not Path(name).exists():
+        known = ", ".join(shelf.vehicles)
+        raise InputError("STUDY.toml", repr(name), f"no such file; starting vehicles: {known}")
     try:
-        return data.decode("utf-8-sig")
-    except UnicodeDecodeError:
-        raise InputError(field, repr(name), "give a text file in UTF-8") from None
-
-
-def _bytes(path: Path) -> bytes:
-    with path.open("rb") as file:
-        return file.read(LARGEST_FILE + 1)
-
-
-def _write(field: str, texts: Mapping[str | Path, str]) -> None:
-    """Write files whole or not at all; line ends stay as they are."""
-    for name, text in texts.items():
-        path = Path(name)
-        with _naming(field, str(name)):
-            path.parent.mkdir(parents=True, exist_ok=True)
-            scratch = path.with_name(f"{path.name}.part{os.getpid()}")
-            scratch.write_bytes(text.encode("utf-8", errors="replace"))
-            scratch.replace(path)
-
-
-@contextmanager
-def _naming(field: str, name: str) -> Iterator[None]:
-    """Say of which file the operating system complains."""
-    try:
-        yield
-    except (OSError, ValueError) as fault:
-        why = getattr(fault, "strerror", None) or str(fault)
-        raise InputError(field, repr(name), f"{why.lower()}; name another file") from fault
+        return parse_study(filing.read("STUDY.toml", name), shelf)
+    except RecursionError:
+        raise InputError("STUDY.toml", repr(name), "nested too deeply to be a study") from None
 
 
 def _one_line(fault: DesignError) -> str:

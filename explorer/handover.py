@@ -5,7 +5,7 @@ from __future__ import annotations
 import io
 import json
 import zipfile
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 
 from explorer.detail_drawing import drawing_of_detail
 from explorer.exports import (
@@ -47,24 +47,30 @@ _VIEWS: Mapping[str, View] = {
 
 
 def files(detail: Detail, subject: Subject, units: Units = METRIC) -> dict[str, str]:
-    """Text of every file by its name, in the order of ``CONTENTS``.
+    """Text of every file by its name, in the order of ``CONTENTS``; units as ``text_of``."""
+    return {name: text_of(name, detail, subject, units) for name in CONTENTS}
+
+
+def text_of(name: str, detail: Detail, subject: Subject, units: Units = METRIC) -> str:
+    """Text of one file of ``CONTENTS``.
 
     units : of the report and the drawings; tables and drawing exchange keep kg and mm.
     """
-    bill = detail.bill
-    drawing = drawing_of_detail(detail, f"{subject.name}: {subject.title}")
-    texts = {
-        "report.html": report_html(detail, subject, units),
-        "cut-list.csv": csv_text(CUT_COLUMNS, cut_rows(bill)),
-        "joints.csv": csv_text(JOINT_COLUMNS, joint_rows(bill)),
-        "stock.csv": csv_text(STOCK_COLUMNS, stock_rows(bill)),
-        "frame.json": frame_file(detail, subject),
-        "centre-lines.dxf": centre_lines_dxf(detail.batch),
-    }
-    for name, view in _VIEWS.items():
+    if name in _VIEWS:
+        view = _VIEWS[name]
+        drawing = drawing_of_detail(detail, f"{subject.name}: {subject.title}")
         colour: Colour = "value" if view == "3d" else "plain"
-        texts[name] = view_svg(drawing, view, units=units, colour=colour, ident=view)
-    return {name: texts[name] for name in CONTENTS}
+        return view_svg(drawing, view, units=units, colour=colour, ident=view)
+    bill = detail.bill
+    makers: dict[str, Callable[[], str]] = {
+        "report.html": lambda: report_html(detail, subject, units),
+        "cut-list.csv": lambda: csv_text(CUT_COLUMNS, cut_rows(bill)),
+        "joints.csv": lambda: csv_text(JOINT_COLUMNS, joint_rows(bill)),
+        "stock.csv": lambda: csv_text(STOCK_COLUMNS, stock_rows(bill)),
+        "frame.json": lambda: frame_file(detail, subject),
+        "centre-lines.dxf": lambda: centre_lines_dxf(detail.batch),
+    }
+    return makers[name]()
 
 
 def frame_file(detail: Detail, subject: Subject | None = None) -> str:

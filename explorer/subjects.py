@@ -29,7 +29,11 @@ def starting_frame(study: Study) -> Subject:
 
 def starting_values(study: Study) -> dict[str, Any]:
     """What the inputs of a study are in its starting frame, by path, in the units of files."""
-    return {given.path: field(study.layout, given.path).value for given in study.inputs}
+    values = {given.path: field(study.layout, given.path).value for given in study.inputs}
+    return {
+        path: float(f"{value:.12g}") if isinstance(value, float) else value  # 1900.0000000000002
+        for path, value in values.items()
+    }
 
 
 def frame_of_run(run: Run, frame: int) -> Subject:
