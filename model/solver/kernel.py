@@ -31,6 +31,7 @@ from model.solver.assembly import (
     prepare_group,
     prepare_member,
 )
+from model.solver.beam import PARALLEL
 from model.solver.elimination import (
     BLOCK,
     SIZE,
@@ -41,7 +42,7 @@ from model.solver.elimination import (
     solve_forward_one,
     solve_forward_two,
 )
-from model.solver.problem import NO_CASE
+from model.solver.problem import LOOSE_PIVOT, NO_CASE
 
 
 def _source_digest() -> int:
@@ -49,6 +50,7 @@ def _source_digest() -> int:
     here = Path(__file__).parent
     names = ("kernel.py", "vector.py", "elimination.py", "assembly.py", "workspace.py")
     text = b"".join((here / name).read_bytes() for name in names)
+    text += repr((LOOSE_PIVOT, PARALLEL)).encode()
     return int.from_bytes(hashlib.sha256(text).digest()[:6], "little")
 
 

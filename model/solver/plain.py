@@ -132,7 +132,7 @@ def assemble(problem: Problem, members: Members) -> tuple[F64, F64]:
     stiffness = np.moveaxis(stiffness, 0, -1)
     n = stiffness.shape[-1]
     diagonal = np.zeros((plan.joints, 6, 6, n))
-    below = np.zeros((plan.blocks + len(plan.twin_block), 6, 6, n))
+    below = np.zeros((plan.blocks + plan.spare, 6, 6, n))
     for m, k in enumerate(stiffness):
         late, early = slice(0, 6), slice(6, 12)
         if plan.turned[m]:
@@ -140,8 +140,8 @@ def assemble(problem: Problem, members: Members) -> tuple[F64, F64]:
         diagonal[plan.member_late[m]] += k[late, late]
         diagonal[plan.member_early[m]] += k[early, early]
         below[plan.member_block[m]] = k[late, early]
-    for extra, block in enumerate(plan.twin_block):
-        below[block] += below[plan.blocks + extra]
+        if plan.member_twin[m] >= 0:
+            below[plan.member_twin[m]] += k[late, early]
     return diagonal, below
 
 

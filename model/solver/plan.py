@@ -35,7 +35,7 @@ class Plan:
     A list that has a varying number of entries for each of ``m`` things is kept as one flat array
     and ``m + 1`` starts: entries ``start[q]`` to ``start[q + 1]`` belong to thing ``q``.
 
-    joints, blocks : number of joints; number of blocks of L below the diagonal.
+    joints, blocks, spare : number of joints; of blocks of L below the diagonal; see below.
     order : (joints,) int32, joint that is eliminated in each step.
     step : (joints,) int32, step in which each joint is eliminated (the inverse of ``order``).
     column_start : (joints + 1,) int32, the blocks of each column; ``row`` : (blocks,) int32,
@@ -46,14 +46,16 @@ class Plan:
         blocks (i, k) and (j, k) whose product is subtracted from it.
     filled : (blocks,) int32, 1 where no member joins the two joints, so the block starts at zero.
     member_block : (members,) int32, block that receives the member's coupling of its two ends.
-        A second member between the same two joints gets a block of its own, number ``blocks``
-        and following; ``twin_block`` : (twins,) int32 is the block it must be added to.
+        A second member between the same two joints gets a block of its own, one of ``spare``
+        after the others; ``member_twin`` : (members,) int32 is the block that must be added to,
+        -1 for all other members.
     member_late, member_early : (members,) int32, step of the end that is eliminated later, and
         earlier; ``turned`` : (members,) int32, 1 where the later end is the member's to end.
     """
 
     joints: int
     blocks: int
+    spare: int
     order: I32
     step: I32
     column_start: I32
@@ -66,7 +68,7 @@ class Plan:
     update_b: I32
     filled: I32
     member_block: I32
-    twin_block: I32
+    member_twin: I32
     member_late: I32
     member_early: I32
     turned: I32
@@ -111,18 +113,19 @@ def make_plan(joints: int, members: I32) -> Plan:
 
     ends = step[members]
     late, early = ends.max(axis=1), ends.min(axis=1)
-    member_block = np.empty(len(members), dtype=np.int32)
+    member_block, member_twin, spare = [], [], 0
     seen: set[int] = set()
-    twins: list[int] = []
-    for m, pair in enumerate(zip(late.tolist(), early.tolist(), strict=True)):
+    for pair in zip(late.tolist(), early.tolist(), strict=True):
         b = block[pair]
-        member_block[m] = len(block) + len(twins) if b in seen else b
-        if b in seen:
-            twins.append(b)
+        second = b in seen
+        member_block.append(len(block) + spare if second else b)
+        member_twin.append(b if second else -1)
+        spare += second
         seen.add(b)
     return Plan(
         joints=joints,
         blocks=len(block),
+        spare=spare,
         order=_int32(order),
         step=step,
         column_start=_starts(rows),
@@ -134,8 +137,8 @@ def make_plan(joints: int, members: I32) -> Plan:
         update_a=_int32([a for pairs in updates for a, _ in pairs]),
         update_b=_int32([b for pairs in updates for _, b in pairs]),
         filled=_int32([b not in seen for b in range(len(block))]),
-        member_block=member_block,
-        twin_block=_int32(twins),
+        member_block=_int32(member_block),
+        member_twin=_int32(member_twin),
         member_late=late,
         member_early=early,
         turned=_int32(ends[:, 1] > ends[:, 0]),

@@ -23,7 +23,7 @@ __all__ = ["Solution", "compile_now", "solve"]
 BLOCK = 256
 """Frames a thread takes at a time."""
 
-COMPILING = "Compiling the frame solver for this machine, once; it takes about ten seconds."
+COMPILING = "Preparing the frame solver for this machine; the first time takes about ten seconds."
 
 
 def compile_now(progress: Callable[[str], None] | None = None) -> None:

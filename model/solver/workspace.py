@@ -6,7 +6,7 @@ thread and stays in its cache. It is laid out in vectors, one number for each la
 =========== ======================= =============================================
 part        vectors                 holds
 =========== ======================= =============================================
-below       (blocks + twins) x 36   blocks of L below the diagonal, row by row
+below       (blocks + spare) x 36   blocks of L below the diagonal, row by row
 diagonal    joints x 21             lower triangles on the diagonal
 motion      cases x joints x 6      forces, then y, then displacements
 place       joints x 3              joint positions
@@ -94,7 +94,7 @@ def workspace_of(problem: Problem) -> Workspace:
     plan, skeleton = problem.plan, problem.skeleton
     groups, members = len(skeleton.groups), len(skeleton.members)
     sizes = (
-        (plan.blocks + len(plan.twin_block)) * BLOCK,
+        (plan.blocks + plan.spare) * BLOCK,
         plan.joints * TRIANGLE,
         problem.cases * plan.joints * SIZE,
         plan.joints * 3,
@@ -120,11 +120,7 @@ def tables_of(problem: Problem, layout: Workspace) -> Tables:
         return np.array(values, dtype=np.int32, order="C").reshape(-1)
 
     member = np.argsort(plan.member_early, kind="stable")
-    block = plan.member_block[member]
-    second = block >= plan.blocks
-    twin = np.where(
-        second, np.append(plan.twin_block, 0)[np.where(second, block - plan.blocks, -1)], -1
-    )
+    twin = plan.member_twin[member]
     return Tables(
         column_start=int32(plan.column_start),
         row_motion=int32(layout.motion + SIZE * plan.row),
@@ -141,7 +137,7 @@ def tables_of(problem: Problem, layout: Workspace) -> Tables:
         late=int32(plan.member_late[member]),
         early=int32(plan.member_early[member]),
         turned=int32(plan.turned[member]),
-        block=int32(layout.below + BLOCK * block),
+        block=int32(layout.below + BLOCK * plan.member_block[member]),
         twin=int32(np.where(twin < 0, -1, layout.below + BLOCK * twin)),
         group=int32(skeleton.group[member]),
         up=_up_and_across(skeleton.up[member]).reshape(-1),

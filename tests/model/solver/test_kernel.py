@@ -310,6 +310,26 @@ def test_strided_read_only_and_shared_arrays_are_taken_as_they_are() -> None:
     assert equal_bits(answers(shared), answers(plainly))
 
 
+def test_no_frames_no_answers() -> None:
+    skeleton, batch = frames.frame_c()
+    one = frames.twist_loads(batch)
+    loads = Loads(one.joint, one.direction, one.value[:0])
+    got = solve(frames.varied(batch, 0), loads, frames.held(skeleton), energy_case=0)
+    assert got.compliance.shape == (0, 1) and got.status.shape == (0,)
+
+
+def test_two_members_between_two_joints_add_up() -> None:
+    skeleton, batch = frames.frame_a()
+    double = replace(
+        skeleton,
+        members=np.vstack([skeleton.members, skeleton.members[:, ::-1]]).astype(np.int32),
+        group=np.tile(skeleton.group, 2).astype(np.int32),
+        up=np.tile(skeleton.up, (2, 1)),
+    )
+    twice = replace(batch, skeleton=double, present=np.ones((1, 26), dtype=bool))
+    np.testing.assert_allclose(answers(twice)[0], answers(batch)[0] / 2, rtol=ANSWERS)
+
+
 def test_an_error_in_a_thread_reaches_the_caller() -> None:
     def make_worker():
         def work(first: int, last: int) -> None:

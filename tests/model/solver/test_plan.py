@@ -93,8 +93,8 @@ def test_members_find_the_block_of_their_two_ends() -> None:
 
 def test_second_member_between_two_joints_gets_its_own_block() -> None:
     plan = make_plan(3, np.array([[0, 1], [1, 2], [1, 0]], dtype=np.int32))
-    assert plan.member_block[2] == plan.blocks
-    assert plan.twin_block.tolist() == [plan.member_block[0]]
+    assert plan.member_block[2] == plan.blocks and plan.spare == 1
+    assert plan.member_twin.tolist() == [-1, -1, plan.member_block[0]]
 
 
 def test_skeletons_alike_share_one_plan() -> None:
