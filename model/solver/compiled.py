@@ -24,6 +24,7 @@ def _lanes_of_this_machine() -> int:
 LANES = _lanes_of_this_machine()
 
 _compiling = threading.Lock()
+_ready: set[int] = set()
 
 
 def compile_for(lanes: int) -> None:
@@ -32,7 +33,7 @@ def compile_for(lanes: int) -> None:
     Large inputs are taken as they are: strided, read-only or broadcast.
     """
     with _compiling:
-        if any(signature[0].count == lanes for signature in solve_frames.signatures):
+        if lanes in _ready:
             return
         wide = types.Array(types.float64, 3, "A", readonly=True)
         present = types.Array(types.boolean, 2, "A", readonly=True)
@@ -58,6 +59,7 @@ def compile_for(lanes: int) -> None:
         solve_frames.disable_compile(False)
         solve_frames.compile(signature)
         solve_frames.disable_compile()
+        _ready.add(lanes)
 
 
 class Compiled:

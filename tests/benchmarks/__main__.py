@@ -155,8 +155,8 @@ def details(name: str, batch: Batch, row: dict[str, float], gemm: float, seconds
     size += task.loads.value.nbytes
     print(f"{name}: elimination and solution {flops / 1e3:.0f} kflop a frame, ", end="")
     print(f"{rate / 1e9:.1f} GFLOP/s a core = {rate / gemm:.0%} of the matrix product; ", end="")
-    print(f"{len(both)} counts of threads: x {both[-1] / both[0]:.2f}; ", end="")
-    print(f"energies {plainly / with_energy - 1:+.0%}; ", end="")
+    print(f"all threads against one x {both[-1] / both[0]:.2f}; ", end="")
+    print(f"energies and all section slopes {plainly / with_energy - 1:+.0%}; ", end="")
     print(f"input {size / count / 1e3:.1f} kB a frame, ", end="")
     print(f"work {ours.work_bytes(task) * ours.LANES / 1e3:.0f} kB a thread")
 
