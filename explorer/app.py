@@ -6,7 +6,7 @@ from pathlib import Path
 
 import streamlit as st
 
-from explorer import furniture, state
+from explorer import furniture, results, state
 from explorer.page_theme import watch_theme
 
 # the page server looks here first, where our modules would stand in for others of their name
@@ -23,6 +23,7 @@ page = st.navigation(
 )
 furniture.sidebar()
 try:
+    results.ready()
     page.run()
 except Exception as fault:  # what a person did wrong is said by the page; this is ours
     traceback.print_exc()

@@ -7,9 +7,9 @@ from typing import Any
 import pandas as pd
 import streamlit as st
 
-from explorer import state, words
+from explorer import furniture, state, words
 from explorer.form import rounded
-from explorer.units import Units, quantity_of, title_of
+from explorer.units import Units, quantity_of
 from sweeps.front import Front, distance
 from sweeps.inputs import Input
 from sweeps.outputs import OUTPUTS
@@ -61,26 +61,38 @@ def label_of(run: Run, column: str | None) -> str | None:
 
 
 def picked(run: Run, rows: pd.DataFrame, best: Front) -> None:
-    """The frame picked in a sentence, and beside those kept as a table."""
+    """The frame picked in a sentence and the way on; beside those kept, as a table."""
     here = state.bench()
-    if here.candidate is None:
-        return
     match = rows[rows["frame"] == here.candidate]
     if match.empty:
-        st.info(f"Frame {here.candidate:,} has no result in this sweep; pick another.")
+        _pick_one(best)
         return
     frame = match.iloc[0]
     st.markdown(words.frame_against_front(frame, distance(best, frame), here.shown_units))
     with st.container(horizontal=True):
+        label = f"Detail frame {int(frame['frame']):,}"
+        if st.button(label, type="primary", icon=":material/arrow_forward:", key="next"):
+            furniture.go("candidate")
         kept = here.candidate in here.beside
         if st.button("Keep to compare", icon=":material/add:", disabled=kept):
-            state.keep_beside([*here.beside, here.candidate])
+            state.keep_beside([*here.beside, int(frame["frame"])])
             st.rerun()
         if here.beside and st.button("Forget those kept", icon=":material/close:"):
             state.keep_beside([])
             st.rerun()
     if len(here.picked) > 1:
         st.dataframe(compared(run, rows, here.picked, here.shown_units), width="stretch")
+
+
+def _pick_one(best: Front) -> None:
+    """What to do while no frame is picked."""
+    with st.container(horizontal=True, vertical_alignment="center"):
+        if best.knee is not None and st.button(f"Take frame {best.knee:,}", type="primary"):
+            state.pick(best.knee)
+            st.rerun()
+        st.markdown("Pick a frame: click one in the picture or tick one in the table."
+                    + (f" Frame {best.knee:,} is the knee: beyond it, stiffness costs most mass."
+                       if best.knee is not None else ""))  # fmt: skip
 
 
 def compared(run: Run, rows: pd.DataFrame, frames: tuple[int, ...], units: Units) -> pd.DataFrame:
@@ -91,7 +103,7 @@ def compared(run: Run, rows: pd.DataFrame, frames: tuple[int, ...], units: Units
     lines: dict[str, list[str]] = {}
     for name in _RESULTS:
         shown = units.shown(found[name], quantity_of(name))
-        lines[title_of(name, units)] = [words.bare(value) for value in shown.loc[there]]
+        lines[words.short_title(name, units)] = [words.bare(value) for value in shown.loc[there]]
     for given in run.study.inputs:
         values = found.loc[there, given.path].tolist()
         if len(set(values)) > 1:
@@ -114,7 +126,7 @@ def front_table(run: Run, best: Front, target: float | None) -> None:
     rows = rows.reset_index(drop=True)
     shown = pd.DataFrame({"Frame": rows["frame"]})
     for name in _RESULTS:
-        shown[title_of(name, units)] = units.shown(rows[name], quantity_of(name))
+        shown[words.short_title(name, units)] = _rounded(rows[name], name, units)
     for given in run.study.inputs:
         shown[words.titled_input(given, units)] = [
             words.input_cell(given, value, units) for value in rows[given.path]
@@ -139,11 +151,19 @@ def front_table(run: Run, best: Front, target: float | None) -> None:
     )
 
 
+def _rounded(values: pd.Series[float], column: str, units: Units) -> pd.Series[float]:
+    """A result for a table: as many places as can be told apart."""
+    shown = units.shown(values, quantity_of(column))
+    return shown.round(1 if float(shown.max()) < 1000 else 0)
+
+
 def _formats(shown: pd.DataFrame, inputs: tuple[Input, ...], units: Units) -> dict[str, Any]:
-    formats: dict[str, Any] = {"Frame": st.column_config.NumberColumn(pinned=True)}
+    frame = st.column_config.NumberColumn(pinned=True, format="localized")
+    formats: dict[str, Any] = {"Frame": frame}
     for name in _RESULTS:
-        figures = "%.1f" if name in ("mass_kg", "twist_per_kg") else "%.0f"
-        formats[title_of(name, units)] = st.column_config.NumberColumn(format=figures)
+        title = words.short_title(name, units)
+        whole = bool((shown[title] % 1 == 0).all())
+        formats[title] = st.column_config.NumberColumn(format="localized" if whole else "%.1f")
     for given in inputs:
         title = words.titled_input(given, units)
         if pd.api.types.is_numeric_dtype(shown[title]):

@@ -22,7 +22,7 @@ from explorer.exports import (
     stock_rows,
 )
 from explorer.report import Subject, report_html
-from explorer.subjects import frame_of_run
+from explorer.subjects import frame_of_run, starting_values
 from explorer.units import Units
 from explorer.views_svg import Colour, View, view_svg
 from model.results.detail import Detail
@@ -75,9 +75,11 @@ def colour_by() -> Literal["value", "kind"]:
 # --- what if --------------------------------------------------------------------------------
 
 
-def what_if(run: Run, frame: int, braced: Mapping[str, str], units: Units) -> None:
+def what_if(run: Run, frame: int, units: Units) -> None:
     """Braces that could be added, changed or left out, best first; bracing can be tried on."""
-    found = results.what_if(run, frame, braced)
+    here = state.bench()
+    braced = here.braced
+    found = results.what_if(run, frame, braced, here.snapped)
     present = [k for k in _KINDS if any(change.kind == k for change in found.changes)]
     kind = st.segmented_control("What to change", present, default=present[0], required=True,
                                 format_func=lambda name: _KINDS[name],
@@ -132,11 +134,13 @@ def changes_table(found: WhatIf, kind: str, units: Units) -> tuple[pd.DataFrame,
 def _formats(units: Units) -> dict[str, Any]:
     column = st.column_config.NumberColumn
     return {
-        "Change": st.column_config.TextColumn(width="large"),
-        "Twist": column(units.titled("Twist stiffness gained", "twist"), format="%+.0f"),
-        "Mass": column(units.titled("Mass added", "mass"), format="%+.2f"),
-        "Ratio": column(units.titled("For each unit of mass", "twist per mass"), format="%.0f"),
-        "Then": column(units.titled("Twist stiffness then", "twist"), format="%.0f"),
+        "Change": st.column_config.TextColumn(width=330),
+        "Twist": column(units.titled("Twist", "twist"), format="%+.0f", width=130),
+        "Mass": column(units.titled("Mass", "mass"), format="%+.2f", width=100),
+        "Ratio": column(
+            units.titled(f"Twist per {units.unit('mass')}", "twist"), format="%.0f", width=160
+        ),
+        "Then": column(units.titled("Twist then", "twist"), format="%.0f", width=150),
     }
 
 
@@ -192,23 +196,30 @@ def _titled(rows: pd.DataFrame, titles: Mapping[str, str]) -> pd.DataFrame:
     return rows[list(titles)].rename(columns=titles)
 
 
-def downloads(
-    run: Run, frame: int, detail: Detail, braced: Mapping[str, str], units: Units
-) -> None:
+def downloads(run: Run, frame: int, detail: Detail, units: Units) -> None:
     """Everything about the frame as files; each is made when it is asked for."""
     stem = f"{words.file_name(run.study.name)}-frame-{frame}"
-    subject = _subject(run, frame, braced, detail)
+    subject = _subject(run, frame)
 
     def data_of(name: str) -> Callable[[], bytes]:
         if name == _EVERYTHING:
             return lambda: handover.archive(handover.files(detail, subject, units), stem)
         return lambda: _text(name, detail, subject, units).encode("utf-8")
 
+    def button(name: str, kind: Literal["primary", "secondary"] = "secondary") -> None:
+        label, mime = _FILES[name]
+        st.download_button(label, data_of(name), file_name=f"{stem}-{name}", mime=mime, type=kind,
+                           key=f"take {name}", on_click="ignore",
+                           icon=":material/download:")  # fmt: skip
+
     with st.container(horizontal=True):
-        for name, (label, mime) in _FILES.items():
-            st.download_button(label, data_of(name), file_name=f"{stem}-{name}", mime=mime,
-                               key=f"take {name}", on_click="ignore",
-                               icon=":material/download:")  # fmt: skip
+        button("cut-list.csv", "primary")
+        button("report.html")
+        button(_EVERYTHING)
+        with st.popover("One of the other files", icon=":material/description:"):
+            for name in _FILES:
+                if name not in ("cut-list.csv", "report.html", _EVERYTHING):
+                    button(name)
 
 
 def _text(name: str, detail: Detail, subject: Subject, units: Units) -> str:
@@ -229,13 +240,57 @@ def _text(name: str, detail: Detail, subject: Subject, units: Units) -> str:
     return view_svg(drawing, view, units=units, colour=colour, ident=view)
 
 
-def _subject(run: Run, frame: int, braced: Mapping[str, str], detail: Detail) -> Subject:
+def _subject(run: Run, frame: int) -> Subject:
+    """What the files are about: the frame of the run, with what was changed about it here."""
+    here = state.bench()
     subject = frame_of_run(run, frame)
-    if not braced:
+    changed = [(words.face(path), bracing) for path, bracing in here.braced.items()]
+    if here.snapped:
+        changed.append(("Tubes", "nearest stock sizes"))
+    if not changed:
         return subject
-    changed = tuple((path, bracing) for path, bracing in braced.items())
-    return replace(subject, title=f"{subject.title}, braced otherwise",
-                   inputs=(*subject.inputs, *changed))  # fmt: skip
+    return replace(subject, title=f"{subject.title}, changed", inputs=(*subject.inputs, *changed))
+
+
+def inputs_table(run: Run, frame: int, units: Units) -> pd.DataFrame:
+    """What was chosen for this frame, and what the starting frame has."""
+    rows = results.solved(run)
+    row = rows[rows["frame"] == frame].iloc[0]
+    start = starting_values(run.study)
+    return pd.DataFrame(
+        {
+            "Input": [words.titled_input(given, units) for given in run.study.inputs],
+            "This frame": [words.input_value(g, row[g.path], units) for g in run.study.inputs],
+            "Started from": [
+                words.input_value(g, start[g.path], units) or "own size" for g in run.study.inputs
+            ],
+        }
+    )
+
+
+INPUT_COLUMNS = {
+    "Input": st.column_config.TextColumn(width=245),
+    "This frame": st.column_config.TextColumn(width=85, alignment="right"),
+    "Started from": st.column_config.TextColumn(width=90, alignment="right"),
+}
+"""How the columns of ``inputs_table`` are shown."""
+
+
+def stock_switch(run: Run, frame: int, detail: Detail) -> None:
+    """Whether tubes are taken from stock lists, where the frame has sizes between them."""
+    here = state.bench()
+    loose = [
+        group for group in detail.batch.skeleton.groups if not detail.layout.tubes[group].stock
+    ]
+    if not loose and not here.snapped:
+        return
+    st.toggle(
+        "Take the tubes from stock lists",
+        value=here.snapped,
+        key=f"snap {run.name} {frame}",
+        on_change=lambda: state.snap(not here.snapped),
+        help="Sizes between those of the lists go to the nearest; mass and stiffness follow.",
+    )
 
 
 def go_on_from(run: Run, detail: Detail) -> None:

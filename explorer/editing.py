@@ -64,6 +64,22 @@ def nearest(stock: StockList, shape: str, sizes: Mapping[str, float]) -> StockSi
     return min(stock.sizes, key=off)
 
 
+def snapped(layout: Layout, stock: Mapping[str, StockList]) -> Layout:
+    """The layout with every tube from stock: sizes of its own go to the nearest on the lists.
+
+    The list is the one that most tubes of that shape come from, else the first of the shape;
+    a tube whose shape is on no list stays as it is.
+    """
+    used = [tube.stock.partition("/")[0] for tube in layout.tubes.values() if tube.stock]
+    for group, tube in layout.tubes.items():
+        fitting = [name for name, found in stock.items() if found.shape == tube.shape]
+        if tube.stock or not fitting:
+            continue
+        size = nearest(stock[max(fitting, key=used.count)], tube.shape, tube.sizes)
+        layout = with_value(layout, f"tube.{group}.stock", size)
+    return layout
+
+
 def _outside(sizes: Mapping[str, float]) -> float:
     """The greatest outside size [m]."""
     return max(value for name, value in sizes.items() if name not in ("wall", "corner_radius"))

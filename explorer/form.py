@@ -46,7 +46,7 @@ def number(path: str, label: str, value: float, quantity: str, step: float | Non
         units.titled(label, quantity),
         value=rounded(units.shown(float(here.waiting.get(path) or value), quantity)),
         step=step if step is not None else _step(quantity, units),
-        format="%.6g",
+        format="%.6g" if units.unit("length") == "mm" else "%.5g",
         key=key,
         on_change=take,
     )
@@ -162,6 +162,8 @@ def masses(units: Units) -> None:
         state.set_field("masses", value)
         here.revision += 1
 
+    column = st.column_config.NumberColumn
+    places = "%.0f" if units.unit("length") == "mm" else "%.1f"
     st.data_editor(
         pd.DataFrame(rows, columns=["name", "kg", "x_mm", "y_mm", "z_mm"]),
         key=key,
@@ -170,11 +172,11 @@ def masses(units: Units) -> None:
         hide_index=True,
         width="stretch",
         column_config={
-            "name": st.column_config.TextColumn("What", width="medium"),
-            "kg": st.column_config.NumberColumn(units.titled("Mass", "mass"), min_value=0),
-            "x_mm": st.column_config.NumberColumn(units.titled("Back", "length")),
-            "y_mm": st.column_config.NumberColumn(units.titled("Right", "length")),
-            "z_mm": st.column_config.NumberColumn(units.titled("Up", "length")),
+            "name": st.column_config.TextColumn("What", width=100),
+            "kg": column(units.unit("mass"), min_value=0, width=62, format="%.1f"),
+            "x_mm": column("back", width=64, format=places),
+            "y_mm": column("right", width=64, format=places),
+            "z_mm": column("up", width=64, format=places),
         },
     )
 

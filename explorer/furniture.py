@@ -11,7 +11,7 @@ import altair as alt
 import pandas as pd
 import streamlit as st
 
-from explorer import drafts, state, words
+from explorer import drafts, state, theme, words
 from explorer.page_theme import page_is_dark
 from model.errors import DesignError, InputError
 from sweeps.catalogue import catalogue
@@ -28,9 +28,17 @@ PAGES = {
 """The pages in the order of the work: name of the file, and what a person reads."""
 
 _STYLE = """<style>
-[data-testid="stMainBlockContainer"] {padding: 3.2rem 2.4rem 4rem; max-width: 1720px}
+[data-testid="stMainBlockContainer"] {padding: 2.6rem 2.4rem 3rem; max-width: 1720px}
+[data-testid="stMainBlockContainer"] h1 {font-size: 2rem; padding: 0 0 0.2rem}
+[data-testid="stMainBlockContainer"] h3 {font-size: 1.3rem}
 [data-testid="stMetric"] {padding: 0.5rem 0.9rem}
-@media (max-width: 640px) {[data-testid="stMainBlockContainer"] {padding: 3.2rem 1rem 4rem}}
+[data-testid="stButtonGroup"] button {padding-left: 0.65rem; padding-right: 0.65rem}
+@media (max-width: 640px) {[data-testid="stMainBlockContainer"] {padding: 3.2rem 1rem 3rem}}
+</style>"""
+_DARK_STYLE = f"""<style>
+[data-testid="stBaseButton-primary"], [data-testid="stBaseButton-primary"] * {{
+  color: {theme.DARK.background}
+}}
 </style>"""
 
 
@@ -41,7 +49,7 @@ def dark() -> bool:
 
 def opening(title: str, sentence: str) -> None:
     """The head of a page: its name, and how things stand in one sentence."""
-    st.html(_STYLE)
+    st.html(_STYLE + _DARK_STYLE if dark() else _STYLE)
     st.title(title, anchor=False)
     st.markdown(sentence)
     here = state.bench()
@@ -126,7 +134,7 @@ def _vehicle() -> None:
     here = state.bench()
     titles = vehicle_titles()
     if here.source not in titles:
-        titles = {here.source: f"{here.study.name} (edited)"} | titles
+        titles = {here.source: here.study.name} | titles
     key = f"vehicle {here.revision} {here.source}"
 
     def choose() -> None:
@@ -153,7 +161,7 @@ def vehicle_titles() -> dict[str, str]:
             name = _name_of(draft.text)
         except InputError:
             continue
-        found[draft.name] = f"{name}, edited {words.moment(when, datetime.datetime.now())}"
+        found[draft.name] = f"{name}, {words.moment(when, datetime.datetime.now())}"
     return found
 
 

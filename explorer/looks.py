@@ -11,7 +11,7 @@ import streamlit as st
 
 from explorer.detail_drawing import KINDS, drawing_of_detail, outside_mm
 from explorer.drawing import FrameDrawing, Station, drawing_of
-from explorer.numbers import number, signed
+from explorer.numbers import decimals, number, percent
 from explorer.units import Units
 from model.errors import DesignError
 from model.frame.layout import Layout
@@ -25,8 +25,10 @@ _KEY_NUMBERS: tuple[tuple[str, str, str, Literal["normal", "inverse", "off"]], .
     ("Axial share", "share", "axial_share", "off"),
 )
 
-COUPLE = 1000.0
-"""Couple at which the twist angle along the frame is shown [N·m]."""
+
+def couple(units: Units) -> float:
+    """Couple at which the twist along the frame is shown, a round one in these units [N·m]."""
+    return units.stored(1000.0, "moment")
 
 
 def examined(layout: Layout) -> tuple[Detail | None, DesignError | None]:
@@ -39,16 +41,17 @@ def examined(layout: Layout) -> tuple[Detail | None, DesignError | None]:
 
 def key_numbers(detail: Detail, before: Detail | None, units: Units) -> None:
     """Mass, twist and bending stiffness, axial share; with the change against another frame."""
-    for column, (label, quantity, name, better) in zip(
-        st.columns(len(_KEY_NUMBERS), wrap=True), _KEY_NUMBERS, strict=True
-    ):
+    row = st.container(horizontal=True)
+    for label, quantity, name, better in _KEY_NUMBERS:
+        share = quantity == "share"
         value, change = float(getattr(detail, name)), None
         then = value if before is None else float(getattr(before, name))
         if number(value) != number(then):
-            change = signed(units.shown(value - then, quantity))
-        column.metric(
-            units.titled(label, quantity),
-            number(units.shown(value, quantity)),
+            places = 0 if share else decimals(units.shown(value, quantity))
+            change = f"{units.shown(value - then, quantity):+,.{places}f}"
+        row.metric(
+            label if share else units.titled(label, quantity),
+            percent(value) if share else number(units.shown(value, quantity)),
             delta=change,
             delta_color=better,
             border=True,
@@ -74,14 +77,14 @@ def drawing(layout: Layout, detail: Detail | None) -> FrameDrawing:
     )
 
 
-def profile_tables(detail: Detail) -> tuple[pd.DataFrame, pd.DataFrame]:
-    """Twist angle at every ring under ``COUPLE``, and where the stations are."""
+def profile_tables(detail: Detail, units: Units) -> tuple[pd.DataFrame, pd.DataFrame]:
+    """Twist angle at every ring under ``couple``, and where the stations are."""
     found, layout = detail.profile, detail.layout
     still = found.angle[int(np.argmax(found.x >= layout.wheelbase - 1e-9))]
     profile = pd.DataFrame(
         {
             "position_mm": found.x * 1e3,
-            "angle_deg": np.abs(np.degrees((found.angle - still) * COUPLE)),
+            "angle_deg": np.abs(np.degrees((found.angle - still) * couple(units))),
         }
     )
     stations = pd.DataFrame(

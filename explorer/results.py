@@ -12,17 +12,20 @@ import pandas as pd
 import streamlit as st
 
 from explorer import drafts, state
+from explorer.editing import snapped
 from model.errors import DesignError
 from model.frame.layout import Layout
 from model.results.detail import Detail, examine
 from model.results.whatif import WhatIf, ranked
 from sweeps.candidate import detail_of
+from sweeps.catalogue import catalogue
 from sweeps.drivers import Drivers, drivers
 from sweeps.evaluate import OK, evaluate
 from sweeps.front import Front, front
 from sweeps.runs import Run, digest, open_run
 from sweeps.sampling import Design
 from sweeps.study import Study, with_value
+from sweeps.study_file import read_study
 
 
 def run_on_bench() -> Run | None:
@@ -81,12 +84,18 @@ def _front(key: str, _run: Run) -> Front:
     return front(table(_run))
 
 
-def detail(run: Run, frame: int, braced: Mapping[str, str] | None = None) -> Detail:
-    """One frame of a run looked at closely, with other bracing on some of its faces."""
+def detail(
+    run: Run, frame: int, braced: Mapping[str, str] | None = None, from_stock: bool = False
+) -> Detail:
+    """One frame of a run looked at closely, with other bracing on some of its faces.
+
+    from_stock : with tubes from stock lists in place of sizes between them.
+    """
     found = _detail(key_of(run), frame, run)
-    if not braced:
+    if not braced and not from_stock:
         return found
-    return examine(with_bracing(found.layout, braced))
+    layout = with_bracing(found.layout, braced or {})
+    return examine(snapped(layout, catalogue().stock) if from_stock else layout)
 
 
 @st.cache_resource(max_entries=40, show_spinner=False)
@@ -100,14 +109,23 @@ def with_bracing(layout: Layout, braced: Mapping[str, str]) -> Layout:
     return changed
 
 
-def what_if(run: Run, frame: int, braced: Mapping[str, str]) -> WhatIf:
+def what_if(run: Run, frame: int, braced: Mapping[str, str], from_stock: bool) -> WhatIf:
     """What braces added to or taken from a frame of a run would do."""
-    return _what_if(key_of(run), frame, repr(sorted(braced.items())), run, braced)
+    changes = f"{sorted(braced.items())} {from_stock}"
+    return _what_if(key_of(run), frame, changes, detail(run, frame, braced, from_stock).layout)
 
 
 @st.cache_resource(max_entries=40, show_spinner=False)
-def _what_if(key: str, frame: int, changes: str, _run: Run, _braced: Mapping[str, str]) -> WhatIf:
-    return ranked(detail(_run, frame, _braced).layout)
+def _what_if(key: str, frame: int, changes: str, _layout: Layout) -> WhatIf:
+    return ranked(_layout)
+
+
+@st.cache_resource(show_spinner="Preparing the solver for this computer. This happens once.")
+def ready() -> bool:
+    """True once the compiled parts of the solver are loaded or made."""
+    study = read_study(state.FIRST_VEHICLE)
+    examine(study.layout)
+    return True
 
 
 # --- before the sweep -----------------------------------------------------------------------

@@ -46,7 +46,8 @@ class Bench:
     run : name of the run folder that Drivers, Front and Candidate look at.
     candidate : the frame of that run being detailed. beside : frames kept to compare it with.
     given : path of the input looked at closely. target : least twist stiffness [N·m/deg].
-    braced : changes of bracing tried on the candidate, path to bracing.
+    braced : changes of bracing tried on the candidate, path to bracing. snapped : whether its
+    tubes are taken from stock lists.
     waiting : edits that cannot be built, by path, with ``fault`` saying why.
     trouble, notice : what the next page says once.
     past : studies to go back to. revision : counts what makes every field show anew.
@@ -62,6 +63,7 @@ class Bench:
     given: str | None = None
     target: float | None = None
     braced: dict[str, str] = field(default_factory=dict)
+    snapped: bool = False
     waiting: dict[str, Any] = field(default_factory=dict)
     fault: InputError | None = None
     trouble: DesignError | None = None
@@ -121,7 +123,8 @@ def choose(source: str) -> None:
     here.source, here.study, here.text = _read(here, source)
     here.run, here.candidate, here.beside = None, None, ()
     here.given, here.target = None, None
-    here.braced, here.waiting, here.fault, here.past = {}, {}, None, []
+    here.braced, here.snapped = {}, False
+    here.waiting, here.fault, here.past = {}, None, []
     _changed(here)
 
 
@@ -202,7 +205,8 @@ def use_run(name: str | None) -> None:
     """Look at another run; a frame picked in the last one is put away."""
     here = bench()
     if name != here.run:
-        here.run, here.candidate, here.beside, here.braced = name, None, (), {}
+        here.run, here.beside = name, ()
+        here.candidate, here.braced, here.snapped = None, {}, False
     _write_address(here)
 
 
@@ -215,7 +219,7 @@ def pick(frame: int | None) -> None:
     """Pick the frame to be detailed."""
     here = bench()
     if frame != here.candidate:
-        here.candidate, here.braced = frame, {}
+        here.candidate, here.braced, here.snapped = frame, {}, False
     _write_address(here)
 
 
@@ -230,6 +234,11 @@ def brace(changes: Mapping[str, str]) -> None:
     """Try other bracing on the candidate; no changes: as it was."""
     here = bench()
     here.braced = {**here.braced, **changes} if changes else {}
+
+
+def snap(on: bool) -> None:
+    """Take the candidate's tubes from stock lists, or leave them as they are."""
+    bench().snapped = on
 
 
 # --- choices of display ---------------------------------------------------------------------
@@ -317,7 +326,7 @@ def _take(here: Bench, said: Mapping[str, str]) -> None:
     here.output = output if output in OUTPUTS else "twist_Nm_per_deg"
     here.given = said.get("input")
     here.target = _number(said.get("target"))
-    here.braced = {}
+    here.braced, here.snapped = {}, False
     here.revision += 1
 
 

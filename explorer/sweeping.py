@@ -76,12 +76,12 @@ def ranges(study: Study, units: Units) -> None:
         height=38 + 35 * len(shown),
         alt="Inputs that vary over a range, with from, to, unit and the value of the frame.",
         column_config={
-            "Vary": st.column_config.CheckboxColumn("Vary", width=80),
-            "Input": st.column_config.TextColumn("Over a range", width=260),
-            "From": st.column_config.NumberColumn(width=85, format="%.6g"),
-            "To": st.column_config.NumberColumn(width=85, format="%.6g"),
-            "Unit": st.column_config.TextColumn(width=60),
-            "Frame has": st.column_config.NumberColumn(width=85, format="%.6g"),
+            "Vary": st.column_config.CheckboxColumn("Vary", width=75),
+            "Input": st.column_config.TextColumn("Over a range", width=225),
+            "From": st.column_config.NumberColumn(width=80, format="%.6g"),
+            "To": st.column_config.NumberColumn(width=80, format="%.6g"),
+            "Unit": st.column_config.TextColumn(width=55),
+            "Frame has": st.column_config.NumberColumn(width=80, format="%.6g"),
         },
     )
 
@@ -308,12 +308,14 @@ def run_panel(study: Study, run: Run | None, busy: bool, same: bool) -> None:
     note = refused_ahead(ahead)
     if note:
         st.caption(note)
+    if busy:
+        return
     label, icon = _what_next(study, run, same)
-    if label and st.button(label, type="primary", icon=icon, disabled=busy, width="stretch"):
+    if label and st.button(label, type="primary", icon=icon, width="stretch"):
         with furniture.telling():
             start(study, run)
         st.rerun()
-    if run is not None and same and run.complete and not busy:
+    if run is not None and same and run.complete:
         double = replace(study, samples=2 * run.study.samples)
         if st.button("Double the samples", icon=":material/add_circle:", width="stretch"):
             with furniture.telling():

@@ -10,7 +10,7 @@ from typing import Any
 import numpy as np
 import pandas as pd
 
-from explorer.numbers import count, listed, number, percent
+from explorer.numbers import count, number, percent
 from explorer.units import METRIC, Units
 from model.errors import DesignError, InputError
 from model.frame.layout import Layout
@@ -41,7 +41,7 @@ def moment(when: datetime.datetime, now: datetime.datetime) -> str:
     clock = f"{when:%H:%M}"
     days = (now.date() - when.date()).days
     if days == 0:
-        return f"today {clock}"
+        return clock
     if days == 1:
         return f"yesterday {clock}"
     date = f"{when.day} {when:%b}"
@@ -126,11 +126,11 @@ def drivers_opening(found: Drivers) -> str:
 def pairs(table: pd.DataFrame) -> str:
     """Which inputs act together."""
     said = [
-        f"{plain(str(row['one']))} with {plain(str(row['other']).lower())} "
-        f"({percent(float(row['second']))})"
+        f"- {plain(str(row['one']))} **with** {plain(str(row['other']))}: "
+        f"{percent(float(row['second']))}"
         for _, row in table.iterrows()
     ]
-    return f"Acting together, beyond what each does alone: {listed(said)}."
+    return "\n".join(["Acting together, these explain more than each does alone:", "", *said])
 
 
 def front_opening(
@@ -167,12 +167,32 @@ def frame_against_front(frame: pd.Series[Any], off: Distance, units: Units) -> s
         f"{units.write(float(frame['twist_Nm_per_deg']), 'twist')}, "
         f"{units.write(float(frame['twist_per_kg']), 'twist per mass')}"
     )
-    if off.lighter <= 0 and off.stiffer <= 0:
+    if _on_front(off):
         return said + ". No other frame beats it."
     return (
         f"{said}. Others are up to {units.write(off.lighter, 'mass', 2)} lighter at no less "
         f"stiffness, or {units.write(off.stiffer, 'twist', 2)} stiffer at no more mass."
     )
+
+
+_SHORT = {
+    "mass_kg": ("Mass", "mass"),
+    "twist_Nm_per_deg": ("Twist", "twist"),
+    "twist_per_kg": ("", "twist"),
+    "bend_N_per_mm": ("Bending", "bend"),
+    "axial_share": ("Axial", "share"),
+}
+
+
+def short_title(column: str, units: Units) -> str:
+    """A result as a short title of a column, with its unit."""
+    title, quantity = _SHORT[column]
+    return units.titled(title or f"Twist per {units.unit('mass')}", quantity)
+
+
+def _on_front(off: Distance) -> bool:
+    """Whether no other frame beats it, but for rounding."""
+    return off.lighter < 1e-6 and off.stiffer < 1e-6
 
 
 def titled_input(given: Input, units: Units) -> str:
@@ -196,6 +216,12 @@ def input_value(given: Input, value: Any, units: Units) -> str:
 def bare(value: float) -> str:
     """A number as text, four figures."""
     return number(value, 4)
+
+
+def face(path: str) -> str:
+    """A face or ring by its path, in words: "Cockpit, floor"."""
+    _, owner, name = path.split(".")
+    return capital(f"{owner}, {name}")
 
 
 def capital(text: str) -> str:
@@ -238,11 +264,20 @@ def changes_between(now: Layout, then: Layout) -> int:
     return len(groups) + len(others) + len(rest)
 
 
-def frame_verdict(detail: Detail) -> str:
+def frame_verdict(detail: Detail, units: Units) -> str:
     """What a frame is good or bad at, in two or three sentences."""
-    said = (how_it_carries(detail.axial_share), plain(bay_words(detail)),
-            where_it_pays(detail))  # fmt: skip
-    return " ".join(sentence for sentence in said if sentence)
+    said = (
+        how_it_carries(detail.axial_share),
+        plain(_in_units(bay_words(detail), units)),
+        where_it_pays(detail),
+    )
+    return "\n".join(f"- {sentence}" for sentence in said if sentence)
+
+
+def _in_units(text: str, units: Units) -> str:
+    """A sentence with its millimetres in the units shown, and room before per cent."""
+    shown = re.sub(r"(\d+) mm", lambda found: units.write(float(found[1]), "length"), text)
+    return shown.replace("%", "\u00a0%")
 
 
 def how_it_carries(axial_share: float) -> str:
@@ -291,7 +326,7 @@ def where_it_pays(detail: Detail) -> str:
 
 
 def candidate_opening(
-    detail: Detail, frame: int, off: Distance | None, tried: int, units: Units
+    detail: Detail, frame: int, off: Distance | None, tried: bool, units: Units
 ) -> str:
     """The frame being detailed in one sentence."""
     said = (
@@ -300,7 +335,7 @@ def candidate_opening(
         f"{units.write(detail.twist / detail.mass, 'twist per mass')}"
     )
     if tried:
-        return f"{said}, with {count(tried, 'face')} braced otherwise than in the sweep."
-    if off is not None and off.lighter <= 0 and off.stiffer <= 0:
+        return f"{said}; changed from the frame of the sweep."
+    if off is not None and _on_front(off):
         return f"{said}. No other frame of the sweep beats it."
     return said + "."

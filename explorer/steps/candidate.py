@@ -25,7 +25,7 @@ if run is None or here.candidate is None:
 frame = here.candidate
 try:
     plain = results.detail(run, frame)
-    detail = results.detail(run, frame, here.braced)
+    detail = results.detail(run, frame, here.braced, here.snapped)
 except DesignError as fault:
     furniture.opening("Candidate", f"Frame {frame:,} cannot be detailed.")
     furniture.problem(fault)
@@ -33,44 +33,49 @@ except DesignError as fault:
     furniture.next_step("front", "Pick another frame")
     st.stop()
 
-best = results.front_of(run)
-furniture.opening(
-    "Candidate",
-    words.candidate_opening(detail, frame, distance(best, detailing.as_row(detail)),
-                            len(here.braced), units),
-)  # fmt: skip
+changed = bool(here.braced) or here.snapped
+off = distance(results.front_of(run), detailing.as_row(detail))
+furniture.opening("Candidate", words.candidate_opening(detail, frame, off, changed, units))
 start = looks.examined(run.study.layout)[0]
-looks.key_numbers(detail, plain if here.braced else start, units)
-st.caption("Changes against the frame of the sweep." if here.braced
-           else "Changes against the frame the sweep started from.")  # fmt: skip
-
-picture, parts = st.columns([1.6, 1], gap="medium")
-with picture:
+looks.key_numbers(detail, plain if changed else start, units)
+with st.container(horizontal=True, vertical_alignment="center"):
     colour = detailing.colour_by()
+    detailing.stock_switch(run, frame, detail)
+    st.caption("Changes against the frame of the sweep." if changed
+               else "Changes against the frame the sweep started from.")  # fmt: skip
+
+picture, chosen = st.columns([1.3, 1], gap="medium")
+with picture:
     frame_view(drawing_of_detail(detail, f"Frame {frame:,}"), key="candidate view", height=470,
                colour=colour, units=units)  # fmt: skip
-with parts:
+with chosen:
+    st.dataframe(detailing.inputs_table(run, frame, units), hide_index=True, width="stretch",
+                 height=470, column_config=detailing.INPUT_COLUMNS)  # fmt: skip
+st.markdown(words.frame_verdict(detail, units))
+groups, along = st.columns(2, gap="large")
+with groups:
     table = looks.energy_table(detail)
     furniture.chart(energy_bars(table, kinds=KINDS, dark=dark), energy_in_words(table))
-    profile, stations = looks.profile_tables(detail)
+with along:
+    profile, stations = looks.profile_tables(detail, units)
     furniture.chart(
-        profile_chart(profile, stations, couple_Nm=looks.COUPLE, units=units, dark=dark,
-                      height=220),
+        profile_chart(profile, stations, couple_Nm=looks.couple(units), units=units, dark=dark,
+                      height=260),
         profile_in_words(profile, stations, units),
     )  # fmt: skip
-st.markdown(words.frame_verdict(detail))
 
 st.subheader("What if", anchor=False)
-detailing.what_if(run, frame, here.braced, units)
+detailing.what_if(run, frame, units)
 
 st.subheader("To build it", anchor=False)
 detailing.to_build(detail)
-detailing.downloads(run, frame, detail, here.braced, units)
+detailing.downloads(run, frame, detail, units)
 
 st.subheader("Before you build", anchor=False)
 st.markdown("\n".join(f"- {line}" for line in (detailing.SAFETY, *CAUTIONS)))
 st.divider()
-if st.button("Go on from this frame", type="primary", icon=":material/replay:", key="next"):
-    detailing.go_on_from(run, detail)
-    furniture.go("frame")
-st.caption("Puts this frame on the Frame page as the start of the next round.")
+with st.container(horizontal=True, vertical_alignment="center"):
+    if st.button("Go on from this frame", type="primary", icon=":material/replay:", key="next"):
+        detailing.go_on_from(run, detail)
+        furniture.go("frame")
+    st.markdown("Makes it the starting frame of the next round.")

@@ -71,5 +71,7 @@ with right, st.expander("How settled the ranking is"):
     history = driving.for_charts(found.history.assign(input=found.history["label"]))
     furniture.chart(convergence_chart(history, dark=dark), convergence_in_words(history))
     st.caption(words.plain(convergence_in_words(history)))
+if "add samples" in found.verdict and st.button("Add samples", icon=":material/add_circle:"):
+    furniture.go("sweep")
 furniture.next_step("front", "See mass against twist stiffness",
                     "Find the frames that no other frame beats.")  # fmt: skip

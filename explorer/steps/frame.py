@@ -30,21 +30,21 @@ if loose:
 if detail is not None:
     looks.key_numbers(detail, before, units)
 
-picture, editor = st.columns([1.5, 1], gap="medium")
+picture, editor = st.columns([1.3, 1], gap="medium")
 with picture:
     picked = frame_view(
         looks.drawing(layout, detail), key="frame view", height=460, units=units, legend=False
     )
     if detail is not None:
-        profile, stations = looks.profile_tables(detail)
+        profile, stations = looks.profile_tables(detail, units)
         said = profile_in_words(profile, stations, units)
         furniture.chart(
-            profile_chart(profile, stations, couple_Nm=looks.COUPLE, units=units,
+            profile_chart(profile, stations, couple_Nm=looks.couple(units), units=units,
                           dark=furniture.dark(), height=230),
             said,
         )  # fmt: skip
 
-PLACES = ("Wheelbase", "Stations", "Bracing", "Tubes", "Equipment")
+PLACES = ("Axles", "Stations", "Bracing", "Tubes", "Equipment")
 
 
 def of_place(place: str, owner: str = "") -> list[Field]:
@@ -54,7 +54,7 @@ def of_place(place: str, owner: str = "") -> list[Field]:
 def which(names: list[str], key: str) -> str:
     """The one of several things to edit."""
     return st.pills("Which", names, default=names[0], required=True, key=key,
-                    label_visibility="collapsed", format_func=words.plain)  # fmt: skip
+                    label_visibility="collapsed", format_func=words.plain, wrap=True)  # fmt: skip
 
 
 def two_by_two(found: list[Field]) -> None:
@@ -74,7 +74,7 @@ def two_by_two(found: list[Field]) -> None:
 with editor:
     place = st.segmented_control("What to change", PLACES, default=PLACES[0], required=True,
                                  key="place", width="stretch", wrap=True)  # fmt: skip
-    if place == "Wheelbase":
+    if place == "Axles":
         two_by_two(of_place("vehicle"))
         rails = {"low": "Lower rails", "high": "Upper rails"}
         for column, end in zip(st.columns(2), ("front", "rear"), strict=True):
@@ -106,8 +106,8 @@ with editor:
         name = which(list(layout.tubes), "group")
         form.tube(name)
     else:
-        st.caption("Loads the frame but does not stiffen it. Places are measured from the middle "
-                   "of the front axle on the ground.")  # fmt: skip
+        st.caption("Loads the frame but does not stiffen it. Places in "
+                   f"{units.unit('length')} from the middle of the front axle on the ground.")  # fmt: skip
         form.masses(units)
     with st.container(horizontal=True):
         st.button("Take back", icon=":material/undo:", disabled=not here.past,
@@ -116,7 +116,7 @@ with editor:
                   on_click=state.choose, args=(here.vehicle,))  # fmt: skip
 
 if detail is not None:
-    st.markdown(words.frame_verdict(detail))
+    st.markdown(words.frame_verdict(detail, units))
     furniture.figures_behind(looks.group_table(detail, units), "Tubes by group",
                              column_config=looks.group_columns(units))  # fmt: skip
 furniture.next_step("sweep", "Sweep this frame", "Try thousands of variants of it.")

@@ -40,8 +40,3 @@ st.caption("Click a frame to pick it. Ctrl and wheel zoom, shift and drag move, 
            "shows all.")  # fmt: skip
 choosing.picked(run, rows, best)
 choosing.front_table(run, best, here.target)
-if here.candidate is None:
-    st.markdown("Pick a frame to go on.")
-else:
-    furniture.next_step("candidate", f"Detail frame {here.candidate:,}",
-                        "Numbers, members, cut list and files of this frame.")  # fmt: skip

@@ -36,11 +36,13 @@ elif run is not None:
     if run.rows_solved:
         solved, best = results.solved(run), results.front_of(run)
         furniture.chart(
-            front_chart(solved, best.rows, units=units, dark=furniture.dark(), height=300),
+            front_chart(solved, best.rows, units=units, dark=furniture.dark(), height=360),
             front_in_words(solved, best.rows, units=units),
         )  # fmt: skip
 
-what, how = st.columns([2.4, 1], gap="large")
+ready = run is not None and run.complete and job is None
+settings = st.expander("What varies, and how many frames", expanded=not (ready and same))
+what, how = settings.columns([2.4, 1], gap="large")
 with what:
     st.subheader("What varies", anchor=False)
     sweeping.ranges(study, units)
@@ -51,6 +53,6 @@ with how:
     sweeping.run_panel(study, run, job is not None, same)
 
 sweeping.earlier()
-if run is not None and run.complete and job is None:
+if ready:
     furniture.next_step("drivers", "See what drives it",
                         "Which of these inputs moves stiffness and mass.")  # fmt: skip
