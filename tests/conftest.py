@@ -118,10 +118,15 @@ def browser() -> Iterator[Browser]:
     if path is None:
         pytest.skip("no Chromium or Chrome found: install one, or set TWISTFRONT_BROWSER to it")
     playwright = pytest.importorskip("playwright.sync_api")
-    with playwright.sync_playwright() as driver:
+    manager = playwright.sync_playwright()
+    try:
+        driver = manager.start()
         started = driver.chromium.launch(executable_path=path, args=list(BROWSER_OPTIONS))
-        yield started
-        started.close()
+    except Exception as error:  # its driver ends without a word where libatomic is missing
+        pytest.skip(f"Playwright cannot start {path}; on Debian: apt install libatomic1 ({error})")
+    yield started
+    started.close()
+    driver.stop()
 
 
 @pytest.fixture(scope="module")
