@@ -53,8 +53,9 @@ class Values:
         return np.broadcast_to(np.asarray(column, dtype=np.float64), (self.n,))
 
     def whole(self, path: str, default: int) -> NDArray[np.int64]:
-        """(n,) whole numbers of a count."""
-        return np.rint(self.number(path, default)).astype(np.int64)
+        """(n,) whole numbers of a count; those that are none (and refused) become 0."""
+        given = self.number(path, default)
+        return np.rint(np.where(np.abs(given) < 1e9, given, 0.0)).astype(np.int64)
 
     def choice(self, path: str, default: Any) -> Choice:
         """The choice at a path, or the layout's own as the only option."""
@@ -71,7 +72,7 @@ class Values:
         name = f"{field}_{unit}" if unit else field
         for row in np.flatnonzero(bad):
             if self.fault[row] is None:
-                text = f"{given[row] * scale:.6g}"
+                text = f"{float(given[row]) * scale:.6g}"
                 self.fault[row] = Refusal(int(row), name, text, do)
 
     def check_dimensions(self) -> None:

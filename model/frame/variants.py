@@ -71,7 +71,8 @@ def variants(
         The rows that cannot be built, each with its first fault, by row.
     """
     values = Values(layout, columns, n)
-    values.check_dimensions()
+    with np.errstate(over="ignore", invalid="ignore"):  # of rows that are refused anyway
+        values.check_dimensions()
     sections = {group: tube_columns(values, group, tube) for group, tube in layout.tubes.items()}
     patterns, allowed = _patterns(values)
     bays = np.stack([values.whole(f"span.{s.name}.bays", s.bays) for s in layout.spans], axis=1)
