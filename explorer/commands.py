@@ -15,6 +15,7 @@ from explorer import __version__, filing
 from model.errors import DesignError, InputError
 
 if TYPE_CHECKING:
+    from sweeps.runs import Run
     from sweeps.study import Study
 
 DONE, OUR_FAULT, BAD_INPUT, STOPPED = 0, 1, 2, 130
@@ -132,9 +133,8 @@ def _sweep(chosen: argparse.Namespace) -> int:
 def _drivers(chosen: argparse.Namespace) -> int:
     from explorer.run_accounts import column_of, drivers_record, drivers_text
     from sweeps.drivers import drivers
-    from sweeps.runs import open_run
 
-    run = open_run(chosen.folder)
+    run = _opened(chosen.folder)
     found = drivers(run, column_of(chosen.output))
     _answer(chosen, drivers_record(run, found), lambda: drivers_text(run, found))
     return DONE
@@ -143,9 +143,8 @@ def _drivers(chosen: argparse.Namespace) -> int:
 def _front(chosen: argparse.Namespace) -> int:
     from explorer.run_accounts import front_record, front_text
     from sweeps.front import front
-    from sweeps.runs import open_run
 
-    run = open_run(chosen.folder)
+    run = _opened(chosen.folder)
     found = front(run.table(), min_twist=chosen.min_twist, max_mass=chosen.max_mass)
     _answer(chosen, front_record(run, found), lambda: front_text(run, found))
     return DONE
@@ -157,9 +156,8 @@ def _detail(chosen: argparse.Namespace) -> int:
     from explorer.subjects import frame_of_run
     from explorer.terminal import pairs
     from sweeps.candidate import detail_of, row_of
-    from sweeps.runs import open_run
 
-    run = open_run(chosen.folder)
+    run = _opened(chosen.folder)
     detail = detail_of(run, chosen.frame)
     subject = frame_of_run(run, chosen.frame)
     into = Path(chosen.into)
@@ -291,10 +289,24 @@ def _study(name: str) -> Study:
         raise InputError("STUDY.toml", repr(name), "nested too deeply to be a study") from None
 
 
+def _opened(folder: str) -> Run:
+    """The run in a folder."""
+    from sweeps.runs import open_run
+
+    try:
+        return open_run(folder)
+    except (KeyError, TypeError, ValueError):
+        remedy = "run.json or study.toml in it is spoilt; sweep into a new folder"
+        raise InputError("FOLDER", repr(folder), remedy) from None
+
+
 def _one_line(fault: DesignError) -> str:
     from sweeps.runs import RunError
 
-    return f"run folder = {fault}" if isinstance(fault, RunError) else str(fault)
+    if isinstance(fault, RunError):
+        return f"run folder = {fault}"
+    text = str(fault)
+    return f"''{text}" if text.startswith(" = ") else text
 
 
 def _say(text: str) -> None:
