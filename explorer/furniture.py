@@ -11,7 +11,7 @@ import altair as alt
 import pandas as pd
 import streamlit as st
 
-from explorer import drafts, state, theme, words
+from explorer import bench, drafts, state, theme, words
 from explorer.page_theme import page_is_dark
 from model.errors import DesignError, InputError
 from sweeps.catalogue import catalogue
@@ -105,7 +105,7 @@ def next_step(page: str, label: str, why: str = "") -> None:
 
 def go(page: str) -> None:
     """Go to another page with everything that is on the bench."""
-    st.switch_page(f"steps/{page}.py", query_params=state.address())
+    st.switch_page(f"steps/{page}.py", query_params=state.parameters())
 
 
 def chart(picture: alt.LayerChart, said: str, **more: Any) -> Any:
@@ -179,7 +179,7 @@ def _units() -> None:
     st.session_state["units"] = here.units
     st.segmented_control(
         "Units",
-        list(state.UNITS),
+        list(bench.UNITS),
         required=True,
         format_func=lambda name: "Metric" if name == "metric" else "Inch-pound",
         key="units",

@@ -12,6 +12,7 @@ import pandas as pd
 import streamlit as st
 
 from explorer import drafts, state
+from explorer.bench import FIRST_VEHICLE
 from explorer.editing import snapped
 from model.errors import DesignError
 from model.frame.layout import Layout
@@ -123,7 +124,7 @@ def _what_if(key: str, frame: int, changes: str, _layout: Layout) -> WhatIf:
 @st.cache_resource(show_spinner="Preparing the solver for this computer. This happens once.")
 def ready() -> bool:
     """True once the compiled parts of the solver are loaded or made."""
-    study = read_study(state.FIRST_VEHICLE)
+    study = read_study(FIRST_VEHICLE)
     examine(study.layout)
     return True
 

@@ -8,86 +8,30 @@ the drafts on disk.
 
 from __future__ import annotations
 
-import re
-from collections.abc import Iterable, Mapping
-from dataclasses import dataclass, field
+from collections.abc import Collection, Iterable, Mapping
+from dataclasses import replace
 from functools import reduce
 from pathlib import Path
 from typing import Any
 
 import streamlit as st
 
-from explorer import drafts
+from explorer import address, drafts
+from explorer.bench import FIRST_VEHICLE, UNITS, Bench
 from explorer.editing import edited
-from explorer.units import INCH_POUND, METRIC, Units
 from model.errors import DesignError, InputError
 from model.frame.layout import Layout
 from model.frame.variants import one
 from sweeps.catalogue import catalogue
+from sweeps.inputs import Input
 from sweeps.outputs import OUTPUTS
 from sweeps.study import Study
 from sweeps.study_file import parse_study
 from sweeps.study_text import write_study
 
-UNITS: Mapping[str, Units] = {"metric": METRIC, "inch": INCH_POUND}
-FIRST_VEHICLE = "hill-climb-single-seater"
 MOST_STEPS_BACK = 50
-MOST_BESIDE = 3
 
 _KEY = "bench"
-_RUN_NAME = re.compile(r"[a-z0-9][a-z0-9.-]{0,90}")
-
-
-@dataclass
-class Bench:
-    """Everything a person has on the bench.
-
-    source : id of a starting vehicle or name of a draft; study : the same, read.
-    run : name of the run folder that Drivers, Front and Candidate look at.
-    candidate : the frame of that run being detailed. beside : frames kept to compare it with.
-    given : path of the input looked at closely. target : least twist stiffness [N·m/deg].
-    braced : changes of bracing tried on the candidate, path to bracing. snapped : whether its
-    tubes are taken from stock lists.
-    waiting : edits that cannot be built, by path, with ``fault`` saying why.
-    trouble, notice : what the next page says once.
-    past : studies to go back to. revision : counts what makes every field show anew.
-    """
-
-    source: str
-    study: Study
-    run: str | None = None
-    candidate: int | None = None
-    beside: tuple[int, ...] = ()
-    units: str = "metric"
-    output: str = "twist_Nm_per_deg"
-    given: str | None = None
-    target: float | None = None
-    braced: dict[str, str] = field(default_factory=dict)
-    snapped: bool = False
-    waiting: dict[str, Any] = field(default_factory=dict)
-    fault: InputError | None = None
-    trouble: DesignError | None = None
-    notice: str = ""
-    past: list[Study] = field(default_factory=list)
-    revision: int = 0
-    address: dict[str, str] = field(default_factory=dict)
-    text: str = ""
-
-    @property
-    def shown_units(self) -> Units:
-        """The units chosen for display."""
-        return UNITS[self.units]
-
-    @property
-    def vehicle(self) -> str:
-        """Id of the starting vehicle that the study began as."""
-        return drafts.vehicle_of(self.source)
-
-    @property
-    def picked(self) -> tuple[int, ...]:
-        """Frames to mark, the candidate first."""
-        first = () if self.candidate is None else (self.candidate,)
-        return tuple(dict.fromkeys((*first, *self.beside)))
 
 
 def bench() -> Bench:
@@ -102,16 +46,16 @@ def follow_address() -> Bench:
     """Call once at the start of every page: what is new in the address comes onto the bench."""
     known = _KEY in st.session_state
     here = bench()
-    said = {name: text for name, text in dict(st.query_params).items() if name in _NAMES}
+    said = {name: text for name, text in dict(st.query_params).items() if name in address.NAMES}
     if known and said and said != here.address:  # the person went back, or changed it by hand
         _take(here, said)
     _write_address(here)
     return here
 
 
-def address() -> dict[str, str]:
+def parameters() -> dict[str, str]:
     """The bench as the parameters of a page's address."""
-    return _address(bench())
+    return address.of(bench())
 
 
 # --- study ----------------------------------------------------------------------------------
@@ -124,7 +68,7 @@ def choose(source: str) -> None:
     here.run, here.candidate, here.beside = None, None, ()
     here.given, here.target = None, None
     here.braced, here.snapped = {}, False
-    here.waiting, here.fault, here.past = {}, None, []
+    here.waiting, here.fault, here.past, here.held = {}, None, [], {}
     _changed(here)
 
 
@@ -154,7 +98,7 @@ def put_other(study: Study) -> None:
     names = {parse_study(text).name: vehicle for vehicle, text in shelf.items()}
     here.source = drafts.new_name(names.get(study.name, drafts.OWN))
     here.text = ""
-    here.past, here.study, here.waiting, here.fault = [], study, {}, None
+    here.past, here.study, here.waiting, here.fault, here.held = [], study, {}, None, {}
     _keep(here)
     _changed(here)
 
@@ -198,6 +142,33 @@ def _built(layout: Layout, edits: Mapping[str, Any]) -> Layout:
     return changed
 
 
+# --- what varies ----------------------------------------------------------------------------
+
+
+def offered() -> tuple[Input, ...]:
+    """The inputs to show: those that vary and those unticked, as they were at this revision."""
+    here = bench()
+    if here.offer[0] != here.revision:
+        there = {given.path: given for given in here.study.inputs}
+        here.held = {path: given for path, given in here.held.items() if path not in there}
+        every = here.held | there
+        before = [given.path for given in here.offer[1] if given.path in every]
+        order = dict.fromkeys([*before, *there, *here.held])
+        here.offer = (here.revision, tuple(every[path] for path in order))
+        here.held_at_first = frozenset(here.held)
+    return here.offer[1]
+
+
+def put_inputs(changed: Mapping[str, Input], held: Collection[str]) -> None:
+    """Put changed inputs into the study; those ``held`` are set aside, and vary no more."""
+    here = bench()
+    order = [given.path for given in offered()]
+    every = {**here.held, **{g.path: g for g in here.study.inputs}, **changed}
+    aside = {p for p in here.held if p not in changed} | {*held}
+    put(replace(here.study, inputs=tuple(every[p] for p in order if p not in aside)), anew=False)
+    here.held = {path: every[path] for path in order if path in aside}
+
+
 # --- run and frames -------------------------------------------------------------------------
 
 
@@ -226,7 +197,7 @@ def pick(frame: int | None) -> None:
 def keep_beside(frames: Iterable[int]) -> None:
     """Keep these frames to compare the candidate with."""
     here = bench()
-    here.beside = tuple(dict.fromkeys(frames))[-MOST_BESIDE:]
+    here.beside = tuple(dict.fromkeys(frames))[-address.MOST_BESIDE:]
     _write_address(here)
 
 
@@ -276,56 +247,33 @@ def set_target(target: float | None) -> None:
 
 # --- address and disk -----------------------------------------------------------------------
 
-_NAMES = ("study", "run", "frame", "beside", "units", "output", "input", "target")
-
-
-def _address(here: Bench) -> dict[str, str]:
-    said = {
-        "study": here.source,
-        "run": here.run or "",
-        "frame": "" if here.candidate is None else str(here.candidate),
-        "beside": ",".join(str(frame) for frame in here.beside),
-        "units": here.units if here.units != "metric" else "",
-        "output": here.output if here.output != "twist_Nm_per_deg" else "",
-        "input": here.given or "",
-        "target": "" if here.target is None else f"{here.target:.6g}",
-    }
-    return {name: text for name, text in said.items() if text}
-
 
 def _write_address(here: Bench) -> None:
-    here.address = _address(here)
+    here.address = address.of(here)
     shown = dict(st.query_params)
-    if {name: text for name, text in shown.items() if name in _NAMES} != here.address:
-        others = {name: text for name, text in shown.items() if name not in _NAMES}
+    if {name: text for name, text in shown.items() if name in address.NAMES} != here.address:
+        others = {name: text for name, text in shown.items() if name not in address.NAMES}
         st.query_params.from_dict(others | here.address)
 
 
 def _from_address(said: Mapping[str, str]) -> Bench:
-    study = parse_study(catalogue().vehicles[FIRST_VEHICLE])
-    here = Bench(FIRST_VEHICLE, study, text=catalogue().vehicles[FIRST_VEHICLE])
+    text = catalogue().vehicles[FIRST_VEHICLE]
+    here = Bench(FIRST_VEHICLE, parse_study(text), text=text)
     _take(here, said)
     return here
 
 
 def _take(here: Bench, said: Mapping[str, str]) -> None:
-    """Read an address; what it says wrongly is left out, and said once where it matters."""
+    """Bring onto the bench what an address says."""
     source = said.get("study", FIRST_VEHICLE)
     if source != here.source:
         here.source, here.study, here.text = _read(here, source)
-        here.waiting, here.fault, here.past = {}, None, []
-    run_name = said.get("run", "")
-    there = _RUN_NAME.fullmatch(run_name) and run_folder(run_name).is_dir()
-    if run_name and not there:
+        here.waiting, here.fault, here.past, here.held = {}, None, [], {}
+    name = said.get("run", "")
+    there = address.is_run_name(name) and run_folder(name).is_dir()
+    if name and not there:
         here.notice = "The sweep in this address is not on this computer (any more)."
-    here.run = run_name if there else None
-    here.candidate = next(iter(_frames(said.get("frame"))), None) if here.run else None
-    here.beside = _frames(said.get("beside"))[:MOST_BESIDE] if here.run else ()
-    here.units = said.get("units", "metric") if said.get("units") in UNITS else "metric"
-    output = said.get("output", "")
-    here.output = output if output in OUTPUTS else "twist_Nm_per_deg"
-    here.given = said.get("input")
-    here.target = _number(said.get("target"))
+    address.take(here, said, name if there else None)
     here.braced, here.snapped = {}, False
     here.revision += 1
 
@@ -356,16 +304,3 @@ def _keep(here: Bench) -> None:
 def _changed(here: Bench) -> None:
     here.revision += 1
     _write_address(here)
-
-
-def _frames(text: str | None) -> tuple[int, ...]:
-    parts = (text or "")[:100].split(",")
-    return tuple(dict.fromkeys(int(p) for p in parts if p.isascii() and p.isdigit()))
-
-
-def _number(text: str | None) -> float | None:
-    try:
-        value = float(text or "")
-    except ValueError:
-        return None
-    return value if 0 < value < 1e9 else None

@@ -1,166 +1,25 @@
-"""The parts of the Sweep page: ranges and choices to edit, a sweep under way, earlier sweeps."""
+"""A sweep on its page: how many frames, run, watch, stop and go on; earlier sweeps."""
 
 from __future__ import annotations
 
 import datetime
-from collections.abc import Callable
 from dataclasses import replace
-from typing import Any
 
 import pandas as pd
 import streamlit as st
 
-from explorer import furniture, results, state, varying, words
-from explorer.form import rounded
+from explorer import furniture, results, state, words
 from explorer.numbers import count
-from explorer.units import Units
-from model.errors import DesignError
+from explorer.varying_form import guarded
 from sweeps import jobs
-from sweeps.inputs import Input, option_label
 from sweeps.runs import Run, RunError, digest, prepare
-from sweeps.study import Study, fields
+from sweeps.sampling import Design
+from sweeps.study import Study
 
 SAMPLES = tuple(2**k for k in range(5, 17))
 """Base samples that are offered."""
 LOOK_AGAIN = 0.5
 """Seconds between two looks at a sweep under way."""
-
-
-# --- what varies ----------------------------------------------------------------------------
-
-
-def ranges(study: Study, units: Units) -> None:
-    """The inputs with a range, as a table to edit; unticked ones are held fixed."""
-    here = state.bench()
-    shown = [given for given in study.inputs if not given.is_choice]
-    if not shown:
-        return
-    now = {f.path: f.value for f in fields(study.layout)}
-    quantities = [_quantity(given) for given in shown]
-    key = f"ranges {here.units} {here.revision}"
-    rows = pd.DataFrame(
-        {
-            "Vary": True,
-            "Input": [given.label for given in shown],
-            "From": [_shown(given.low, q, units) for given, q in zip(shown, quantities,
-                     strict=True)],
-            "To": [_shown(given.high, q, units) for given, q in zip(shown, quantities,
-                   strict=True)],
-            "Unit": [units.unit(q) if q != "none" else "wheelbases" for q in quantities],
-            "Frame has": [_shown(now.get(given.path), q, units) for given, q in
-                          zip(shown, quantities, strict=True)],
-        }
-    )  # fmt: skip
-
-    def take() -> None:
-        changed = study
-        for at, cells in st.session_state[key]["edited_rows"].items():
-            given, quantity = shown[int(at)], quantities[int(at)]
-            if cells.get("Vary") is False:
-                changed = changed.without_input(given.path)
-                continue
-            low, high = (
-                units.stored(float(cells[side]), quantity) if cells.get(side) is not None else old
-                for side, old in (("From", given.low), ("To", given.high))
-            )
-            changed = varying.with_range(changed, given.path, low, high)
-        state.put(changed)
-
-    st.data_editor(
-        rows,
-        key=key,
-        on_change=guarded(take),
-        hide_index=True,
-        disabled=("Input", "Unit", "Frame has"),
-        width="stretch",
-        height=38 + 35 * len(shown),
-        alt="Inputs that vary over a range, with from, to, unit and the value of the frame.",
-        column_config={
-            "Vary": st.column_config.CheckboxColumn("Vary", width=75),
-            "Input": st.column_config.TextColumn("Over a range", width=225),
-            "From": st.column_config.NumberColumn(width=80, format="%.6g"),
-            "To": st.column_config.NumberColumn(width=80, format="%.6g"),
-            "Unit": st.column_config.TextColumn(width=55),
-            "Frame has": st.column_config.NumberColumn(width=80, format="%.6g"),
-        },
-    )
-
-
-def choices(study: Study) -> None:
-    """The inputs that are choices, each with its options to tick."""
-    here = state.bench()
-    columns = st.columns(2, wrap=True)
-    for place, given in enumerate(given for given in study.inputs if given.is_choice):
-        key = f"options {given.path} {here.revision}"
-        options = {said(option): option for option in varying.possible(study.layout, given)}
-
-        def take(path: str = given.path, key: str = key, options: dict[str, Any] = options) -> None:
-            chosen = [options[name] for name in st.session_state[key]]
-            state.put(varying.with_options(study, path, chosen), anew=len(chosen) < 2)
-
-        columns[place % 2].multiselect(
-            words.plain(given.label),
-            list(options),
-            default=[said(option) for option in given.options],
-            key=key,
-            on_change=guarded(take),
-            placeholder="Held as the frame has it",
-        )
-
-
-def add_input(study: Study) -> None:
-    """A further input, with a range to begin with."""
-    found = {f.path: f.label for f in varying.addable(study)}
-    here = state.bench()
-    key = f"add input {here.revision}"
-
-    def take() -> None:
-        path = st.session_state[key]
-        if path is not None:
-            usual = state.original()
-            state.put(study.with_input(varying.first_input(study.layout, path, usual)))
-
-    st.selectbox(
-        "Vary something else as well",
-        list(found),
-        index=None,
-        format_func=lambda path: found[path],
-        placeholder="Choose a dimension, bracing or tube",
-        key=key,
-        on_change=guarded(take),
-    )
-
-
-def said(option: Any) -> str:
-    """An option as a person reads it: "25 x 1.5", "cross", "3"."""
-    label = str(option_label(option))
-    return label.partition("/")[2] or label
-
-
-def guarded(take: Callable[[], None]) -> Callable[[], None]:
-    """A callback that puts a fault on the bench instead of raising it; fields show anew."""
-
-    def safely() -> None:
-        here = state.bench()
-        here.fault = None
-        try:
-            take()
-        except DesignError as fault:
-            here.trouble = fault
-            here.revision += 1
-
-    return safely
-
-
-def _quantity(given: Input) -> str:
-    return "length" if given.unit == "mm" else "none"
-
-
-def _shown(value: Any, quantity: str, units: Units) -> float | None:
-    return None if value is None else rounded(units.shown(float(value), quantity))
-
-
-# --- run it ---------------------------------------------------------------------------------
 
 
 def same_sweep(run: Run, study: Study) -> bool:
@@ -202,13 +61,18 @@ def watch(run: Run) -> None:
     def look() -> None:
         job = jobs.find(run.folder)
         if job is None or not job.active:
+            st.session_state.pop("stopping", None)
             st.rerun(scope="app")
         p = job.progress
         with st.container(border=True):
             st.progress(min(p.share, 1.0), words.progress(p))
             if st.button("Cancel", icon=":material/stop_circle:", key="cancel"):
                 job.cancel()
-            st.caption("What is solved stays. You may close the page: the sweep goes on.")
+                st.session_state["stopping"] = run.name
+            if st.session_state.get("stopping") == run.name:
+                st.caption("Stopping as soon as the frames in hand are solved.")
+            else:
+                st.caption("What is solved stays. You may close the page: the sweep goes on.")
 
     look()
 
@@ -257,13 +121,11 @@ def open_earlier(name: str) -> None:
 
 def extent(study: Study, trial: results.Trial | None) -> str:
     """How many frames a sweep makes and how long it will take."""
-    from sweeps.sampling import Design
-
     rows = Design(len(study.inputs), study.samples, True, study.seed).rows
     text = f"**{count(rows, 'frame')}**"
     if trial is None:
-        return text + "."
-    return f"{text}, about {words.duration(rows / trial.rate)} here."
+        return text
+    return f"{text}, about {words.duration(rows / trial.rate)}"
 
 
 def refused_ahead(trial: results.Trial) -> str:

@@ -10,7 +10,7 @@ from explorer.editing import nearest
 from model.errors import InputError
 from model.frame.consistency import check_face, check_ring
 from model.frame.layout import Layout
-from model.frame.vocabulary import BRACING, MEETING, MOST_BAYS
+from model.frame.vocabulary import BRACING, MOST_BAYS
 from model.stock.tubes import StockSize
 from sweeps.catalogue import Catalogue, catalogue
 from sweeps.inputs import Input
@@ -99,30 +99,11 @@ def bracings(layout: Layout, path: str) -> list[str]:
     return found
 
 
-def with_range(study: Study, path: str, low: float | None, high: float | None) -> Study:
-    """The study with another range of one input, in the unit of its path."""
+def ranged(given: Input, low: float | None, high: float | None) -> Input:
+    """An input with another range, in the unit of its path."""
     if low is None or high is None:
-        raise InputError(path, "nothing", "give from and to")
-    return study.with_input(replace(study.input(path), low=float(low), high=float(high)))
-
-
-def with_options(study: Study, path: str, options: Sequence[Any]) -> Study:
-    """The study with other options of one input, in their own order; one or none holds it fixed."""
-    given = study.input(path)
-    if len(options) < 2:
-        return study.without_input(path)
-    order = possible(study.layout, given)
-    ranked = tuple(sorted(options, key=order.index))
-    return study.with_input(replace(given, options=ranked))
-
-
-def joints_change(study: Study) -> list[str]:
-    """Inputs that change which joints there are: each of their values is a family of its own."""
-    return [
-        given.label
-        for given in study.inputs
-        if given.path.endswith(".bays") or any(option in MEETING for option in given.options)
-    ]
+        raise InputError(given.path, "nothing", "give from and to")
+    return replace(given, low=float(low), high=float(high))
 
 
 def _around(layout: Layout, group: str, shelf: Catalogue) -> list[StockSize]:

@@ -106,8 +106,9 @@ with editor:
         name = which(list(layout.tubes), "group")
         form.tube(name)
     else:
-        st.caption("Loads the frame but does not stiffen it. Places in "
-                   f"{units.unit('length')} from the middle of the front axle on the ground.")  # fmt: skip
+        unit = units.unit("length")
+        st.caption("Loads the frame but does not stiffen it. "
+                   f"Places in {unit} from the front axle, the middle and the ground.")  # fmt: skip
         form.masses(units)
     with st.container(horizontal=True):
         st.button("Take back", icon=":material/undo:", disabled=not here.past,

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import streamlit as st
 
-from explorer import furniture, results, state, sweeping, words
+from explorer import furniture, results, state, sweeping, varying_form, words
 from explorer.charts import front_chart, front_in_words
 from sweeps import jobs
 from sweeps.evaluate import OK
@@ -42,17 +42,17 @@ elif run is not None:
 
 ready = run is not None and run.complete and job is None
 settings = st.expander("What varies, and how many frames", expanded=not (ready and same))
-what, how = settings.columns([2.4, 1], gap="large")
+what, how = settings.columns([2.8, 1], gap="large")
 with what:
     st.subheader("What varies", anchor=False)
-    sweeping.ranges(study, units)
-    sweeping.choices(study)
-    sweeping.add_input(study)
-with how:
-    st.subheader("How many", anchor=False)
-    sweeping.run_panel(study, run, job is not None, same)
+    varying_form.ranges(study, units)
+    varying_form.choices(study)
+    varying_form.add_input(study)
 
 sweeping.earlier()
 if ready:
     furniture.next_step("drivers", "See what drives it",
                         "Which of these inputs moves stiffness and mass.")  # fmt: skip
+with how:  # last, because it tries a few frames to know how long all will take
+    st.subheader("How many", anchor=False)
+    sweeping.run_panel(study, run, job is not None, same)
