@@ -15,6 +15,7 @@ def opened(page, url):
     page.goto(url)
     page.get_by_test_id("stSidebar").wait_for()
     page.locator("[data-testid=stApp][data-test-script-state=notRunning]").wait_for()
+    page.wait_for_function("!document.querySelector('[data-testid=stSkeleton]')")
     return page
 
 
