@@ -7,6 +7,7 @@ from typing import Any
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
+from scipy.special import ndtr, ndtri
 
 from model.errors import InputError
 from model.frame.columns import Choice, Column
@@ -18,6 +19,9 @@ F64 = NDArray[np.float64]
 UNITS = {"mm": 1e-3, "Nm_per_rad": 1.0, "N_per_m": 1.0}
 """Unit suffixes of paths in files, with their size in SI."""
 
+SHAPES = ("even", "triangular", "normal")
+"""How likely the values of a range are: all the same, most at a peak, or as a tolerance falls."""
+
 
 @dataclass(frozen=True)
 class Input:
@@ -27,6 +31,8 @@ class Input:
     label : in words. unit : ``mm`` or empty.
     low, high : ends of a range in that unit; None for a choice.
     options : what may be chosen, in order (thinnest first for stock sizes).
+    shape : one of ``SHAPES``. peak : likeliest value of a triangular range.
+    mean, sd : mean and standard deviation of a normal range before its ends are cut off.
     """
 
     path: str
@@ -35,8 +41,16 @@ class Input:
     low: float | None = None
     high: float | None = None
     options: tuple[Any, ...] = ()
+    shape: str = "even"
+    peak: float | None = None
+    mean: float | None = None
+    sd: float | None = None
 
     def __post_init__(self) -> None:
+        if self.shape not in SHAPES:
+            raise InputError(
+                f"{self.path}.shape", repr(self.shape), f"use one of: {', '.join(SHAPES)}"
+            )
         if self.options:
             return
         if self.low is None or self.high is None:
@@ -44,6 +58,19 @@ class Input:
         if not (np.isfinite(self.low) and np.isfinite(self.high) and self.low < self.high):
             raise InputError(
                 self.path, f"{self.low:g} to {self.high:g}", "let from be less than to"
+            )
+        if self.shape == "triangular":
+            self._within("peak", self.peak)
+        if self.shape == "normal":
+            self._within("mean", self.mean)
+            if self.sd is None or not (np.isfinite(self.sd) and self.sd > 0):
+                raise InputError(f"{self.path}.sd", f"{self.sd}", "give a number above 0")
+
+    def _within(self, name: str, value: float | None) -> None:
+        if value is None or not self.low <= value <= self.high:  # type: ignore[operator]
+            given = "missing" if value is None else f"{value:g}"
+            raise InputError(
+                f"{self.path}.{name}", given, f"give a number from {self.low:g} to {self.high:g}"
             )
 
     @property
@@ -61,7 +88,12 @@ class Input:
         """What it may become, in words."""
         if self.is_choice:
             return ", ".join(str(label) for label in self.option_labels)
-        return f"{self.low:g} to {self.high:g} {self.unit}".strip()
+        ends = f"{self.low:g} to {self.high:g} {self.unit}".strip()
+        if self.shape == "triangular":
+            return f"{ends}, most likely {self.peak:g}"
+        if self.shape == "normal":
+            return f"{ends}, normal with mean {self.mean:g} and standard deviation {self.sd:g}"
+        return ends
 
     def picked(self, unit_values: ArrayLike) -> NDArray[np.int64]:
         """Option number for values in [0, 1]: equal bins."""
@@ -70,10 +102,17 @@ class Input:
         return np.clip((u * count).astype(np.int64), 0, count - 1)
 
     def numbers(self, unit_values: ArrayLike) -> F64:
-        """Values in the file's unit for values in [0, 1]."""
+        """Values in the file's unit for values in [0, 1]: the inverse distribution function."""
         assert self.low is not None
         assert self.high is not None
         u = np.asarray(unit_values, dtype=np.float64)
+        if self.shape == "triangular":
+            assert self.peak is not None
+            return _triangular(u, self.low, self.peak, self.high)
+        if self.shape == "normal":
+            assert self.mean is not None
+            assert self.sd is not None
+            return _cut_normal(u, self.mean, self.sd, self.low, self.high)
         return self.low + u * (self.high - self.low)
 
     def column(self, unit_values: ArrayLike) -> Column:
@@ -99,6 +138,21 @@ class Input:
     def inner_path(self) -> str:
         """The path in SI, without the unit."""
         return strip_unit(self.path)
+
+
+def _triangular(u: F64, low: float, peak: float, high: float) -> F64:
+    """Inverse distribution function of a triangle; own derivation from its two parabolas."""
+    span = high - low
+    rising = low + np.sqrt(np.clip(u, 0.0, None) * span * (peak - low))
+    falling = high - np.sqrt(np.clip(1.0 - u, 0.0, None) * span * (high - peak))
+    return np.where(np.isnan(u), u, np.where(u * span < peak - low, rising, falling))
+
+
+def _cut_normal(u: F64, mean: float, sd: float, low: float, high: float) -> F64:
+    """Inverse distribution function of a normal distribution with its ends cut off."""
+    below, above = ndtr((low - mean) / sd), ndtr((high - mean) / sd)
+    values: F64 = np.clip(mean + sd * ndtri(below + u * (above - below)), low, high)
+    return values
 
 
 def option_label(option: Any) -> Any:

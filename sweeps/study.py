@@ -12,11 +12,13 @@ from numpy.typing import NDArray
 
 from model.errors import InputError
 from model.frame.columns import Column
-from model.frame.layout import Layout, with_hoop, with_span, with_station, with_tube
-from model.stock.materials import Material
-from model.stock.sections import SHAPES
-from model.stock.tubes import StockSize
-from sweeps.inputs import UNITS, Input, option_label, strip_unit, unit_of
+from model.frame.layout import Layout
+from sweeps.fields import Field, field, fields, with_value
+from sweeps.inputs import Input
+from sweeps.links import Group, Link, check_groups, check_links, follower
+
+__all__ = ["METHODS", "Field", "Group", "Link", "Study", "field", "fields", "input_values",
+           "with_value"]  # fmt: skip
 
 F64 = NDArray[np.float64]
 
@@ -29,6 +31,8 @@ class Study:
 
     about : what the vehicle is, in words. samples : base samples of the sweep, a power of two.
     seed : 1 or more; the same seed gives the same frames.
+    links : fields that follow another one and take no dimension of the design.
+    groups : inputs that are judged together.
     """
 
     about: str
@@ -37,6 +41,8 @@ class Study:
     samples: int = 1024
     seed: int = 1
     method: str = "sobol"
+    links: tuple[Link, ...] = ()
+    groups: tuple[Group, ...] = ()
 
     def __post_init__(self) -> None:
         if self.samples < 2 or self.samples & (self.samples - 1) or self.samples > 2**20:
@@ -46,10 +52,13 @@ class Study:
             raise InputError("seed", str(self.seed), "use 1 or more")
         if self.method not in METHODS:
             raise InputError("method", repr(self.method), f"use one of: {', '.join(METHODS)}")
-        paths = [i.path for i in self.inputs]
+        paths = [i.path for i in self.inputs] + [link.path for link in self.links]
         for path in paths:
             if paths.count(path) > 1:
                 raise InputError(path, "given twice", "let each input vary once")
+        check_links(self.links)
+        self.drawn  # noqa: B018  links that do not fit are refused here
+        check_groups(self.groups, [i.path for i in self.inputs])
 
     @property
     def name(self) -> str:
@@ -65,215 +74,79 @@ class Study:
             "input", repr(path), f"use one of: {', '.join(i.path for i in self.inputs)}"
         )
 
+    @property
+    def drawn(self) -> tuple[tuple[Input, int | None], ...]:
+        """Every field that is set from the unit cube, with its column there.
+
+        The inputs in order, then the fields linked to one, as inputs of the same column; None as
+        the column of a field linked to one that is held.
+        """
+        number = {i.path: k for k, i in enumerate(self.inputs)}
+        linked = tuple(
+            (follower(link, self.layout, self.inputs), number.get(link.same_as))
+            for link in self.links
+        )
+        return (*((i, k) for k, i in enumerate(self.inputs)), *linked)
+
     def columns(self, unit: F64) -> dict[str, Column]:
         """Columns for ``model.frame.variants`` from rows in the unit cube (n, inputs)."""
-        return {i.inner_path: i.column(unit[:, k]) for k, i in enumerate(self.inputs)}
+        return {i.inner_path: i.column(_column(unit, k)) for i, k in self.drawn}
 
     def table(self, unit: F64) -> pd.DataFrame:
-        """The same as people read them: file units, option labels; one column an input."""
-        return pd.DataFrame({i.path: i.shown(unit[:, k]) for k, i in enumerate(self.inputs)})
+        """The same as people read them: file units, option labels; one column a field."""
+        return pd.DataFrame({i.path: i.shown(_column(unit, k)) for i, k in self.drawn})
 
     def layout_at(self, unit: F64) -> Layout:
         """The layout of one row (inputs,) in the unit cube."""
         layout = self.layout
-        for k, found in enumerate(self.inputs):
+        for found, k in self.drawn:
+            at = 0.0 if k is None else unit[k]
             value: Any
             if found.is_choice:
-                value = found.options[int(found.picked(unit[k]))]
+                value = found.options[int(found.picked(at))]
             else:
-                value = float(found.numbers(unit[k]))
+                value = float(found.numbers(at))
             layout = with_value(layout, found.path, value)
         return layout
 
     def with_layout(self, layout: Layout) -> Study:
-        """The study of another layout; inputs whose path it no longer has are dropped."""
+        """The study of another layout; inputs and links whose path it no longer has are dropped."""
         known = {f.path for f in fields(layout)}
-        return replace(self, layout=layout, inputs=tuple(i for i in self.inputs if i.path in known))
+        inputs = tuple(i for i in self.inputs if i.path in known)
+        links = tuple(x for x in self.links if x.path in known and x.same_as in known)
+        return replace(
+            self, layout=layout, inputs=inputs, links=links, groups=_judged(self.groups, inputs)
+        )
 
     def with_input(self, given: Input) -> Study:
-        """The study with an input added, or put in place of the one of the same path."""
+        """The study with an input added, or put in place of the one (or link) of the same path."""
         others = [i for i in self.inputs if i.path != given.path]
         place = next((k for k, i in enumerate(self.inputs) if i.path == given.path), len(others))
-        return replace(self, inputs=(*others[:place], given, *others[place:]))
+        links = tuple(link for link in self.links if link.path != given.path)
+        return replace(self, inputs=(*others[:place], given, *others[place:]), links=links)
 
     def without_input(self, path: str) -> Study:
-        """The study with an input held at the layout's own value."""
-        return replace(self, inputs=tuple(i for i in self.inputs if i.path != path))
+        """The study with an input held at the layout's own value; what is linked to it follows."""
+        inputs = tuple(i for i in self.inputs if i.path != path)
+        return replace(self, inputs=inputs, groups=_judged(self.groups, inputs))
+
+    def with_link(self, link: Link) -> Study:
+        """The study with a field that follows another one, in place of its own input or link."""
+        held = self.without_input(link.path)
+        links = (*(x for x in held.links if x.path != link.path), link)
+        return replace(held, links=links)
 
 
-@dataclass(frozen=True)
-class Field:
-    """Something about a layout that can be set and that a sweep may vary.
-
-    path : with its unit. label : in words. place : ``vehicle``, ``station``, ``span``, ``hoop``
-        or ``tube``, with the name of the thing in ``owner``.
-    kind : ``number``, ``count``, ``bracing``, ``stock`` or ``material``. value : in file units.
-    low, high : sensible range for a sweep, in file units.
-    """
-
-    path: str
-    label: str
-    place: str
-    owner: str
-    kind: str
-    unit: str
-    value: Any
-    low: float = 0.0
-    high: float = 0.0
+def _column(unit: F64, k: int | None) -> F64:
+    column: F64 = np.zeros(len(unit)) if k is None else unit[:, k]
+    return column
 
 
-_STATION_WORDS = {
-    "width_low": "width at the lower rails",
-    "width_high": "width at the upper rails",
-    "height_low": "height of the lower rails",
-    "height_high": "height of the upper rails",
-    "outrigger": "width over the outriggers",
-}
-_HOOP_WORDS = {"height": "height", "width": "width at the top", "lean": "lean"}
-
-
-def fields(layout: Layout) -> tuple[Field, ...]:
-    """Everything about a layout that can be set, in the order that a designer goes through it."""
-    found = [
-        _length("wheelbase_mm", "Wheelbase", "vehicle", "", layout.wheelbase),
-        _length("track_front_mm", "Front track", "vehicle", "", layout.track_front),
-        _length("track_rear_mm", "Rear track", "vehicle", "", layout.track_rear),
-    ]
-    for k, station in enumerate(layout.stations):
-        path = f"station.{station.name}"
-        if station.name not in (layout.front_axle, layout.rear_axle):
-            found.append(
-                Field(f"{path}.at", f"Position of {station.name}", "station", station.name,
-                      "number", "", station.at, station.at - 0.05, station.at + 0.05)
-            )  # fmt: skip
-        names = ["width_low", "height_low"]
-        if layout.tall(k):
-            names += ["width_high", "height_high"]
-        if station.outrigger > 0:
-            names.append("outrigger")
-        for name in names:
-            words = f"{station.name}, {_STATION_WORDS[name]}"
-            value = getattr(station, name)
-            found.append(
-                _length(f"{path}.{name}_mm", _capital(words), "station", station.name, value)
-            )
-        if layout.tall(k):
-            found.append(
-                Field(f"{path}.ring", _capital(f"{station.name}, ring bracing"), "station",
-                      station.name, "bracing", "", station.ring)
-            )  # fmt: skip
-    for span in layout.spans:
-        path = f"span.{span.name}"
-        found.append(
-            Field(f"{path}.bays", _capital(f"{span.name}, bays"), "span", span.name, "count", "",
-                  span.bays, max(1, span.bays - 1), span.bays + 1)
-        )  # fmt: skip
-        faces = {"floor": span.floor, "top": span.top}
-        if span.left == span.right:
-            faces["sides"] = span.left
-        else:
-            faces |= {"left": span.left, "right": span.right}
-        for face, bracing in faces.items():
-            clear = face in span.clear or (face == "sides" and {"left", "right"} & {*span.clear})
-            if clear or (face != "floor" and not span.upper):
-                continue
-            found.append(
-                Field(f"{path}.{face}", _capital(f"{span.name}, {face} bracing"), "span",
-                      span.name, "bracing", "", bracing)
-            )  # fmt: skip
-    for hoop in layout.hoops:
-        for name, words in _HOOP_WORDS.items():
-            found.append(
-                _length(f"hoop.{hoop.name}.{name}_mm", _capital(f"{hoop.name}, {words}"), "hoop",
-                        hoop.name, getattr(hoop, name))
-            )  # fmt: skip
-    for group in layout.tubes:
-        found += _tube_fields(layout, group)
-    return tuple(found)
-
-
-def field(layout: Layout, path: str) -> Field:
-    """The field of that path."""
-    for found in fields(layout):
-        if found.path == path:
-            return found
-    raise InputError("path", repr(path), "use a path of this layout, with its unit")
-
-
-def with_value(layout: Layout, path: str, value: Any) -> Layout:
-    """The layout with one field set; ``value`` in the path's unit, or the option itself.
-
-    Raises
-    ------
-    InputError
-        No such field, or a layout that contradicts itself.
-    """
-    inner, scale = strip_unit(path), UNITS.get(unit_of(path), 1.0)
-    if isinstance(value, int | float) and unit_of(path):
-        value = float(value) * scale
-    parts = inner.split(".")
-    if parts[0] in ("wheelbase", "track_front", "track_rear") and len(parts) == 1:
-        return replace(layout, **{parts[0]: value})
-    if len(parts) != 3:
-        raise InputError("path", repr(path), "write KIND.NAME.FIELD, such as span.cockpit.bays")
-    kind, owner, name = parts
-    if kind == "station":
-        return with_station(layout, owner, **{name: value})
-    if kind == "hoop":
-        return with_hoop(layout, owner, **{name: value})
-    if kind == "span":
-        if name == "bays":
-            value = int(value)
-        names = ("left", "right") if name == "sides" else (name,)
-        return with_span(layout, owner, **dict.fromkeys(names, value))
-    if kind == "tube":
-        return _with_tube_value(layout, owner, name, value)
-    raise InputError("path", repr(path), "begin with station, span, hoop or tube")
-
-
-def _with_tube_value(layout: Layout, group: str, name: str, value: Any) -> Layout:
-    if isinstance(value, StockSize):
-        return with_tube(
-            layout, group, shape=value.shape, sizes=dict(value.sizes), stock=option_label(value)
-        )
-    if isinstance(value, Material) or name in ("rotation", "axial"):
-        return with_tube(layout, group, **{name: value})
-    if group in layout.tubes and name in SHAPES[layout.tubes[group].shape].sizes:
-        sizes = {**layout.tubes[group].sizes, name: float(value)}
-        return with_tube(layout, group, sizes=sizes, stock="")
-    raise InputError(f"tube.{group}.{name}", str(value), "this tube has no such size")
-
-
-def _tube_fields(layout: Layout, group: str) -> list[Field]:
-    tube, path = layout.tubes[group], f"tube.{group}"
-    found = [
-        Field(f"{path}.stock", _capital(f"{group}, stock size"), "tube", group, "stock", "",
-              tube.stock)
-    ]  # fmt: skip
-    for name in SHAPES[tube.shape].sizes:
-        value = tube.sizes[name] * 1e3
-        low, high = (value * 0.8, value * 1.25) if name != "wall" else (value * 0.6, value * 1.5)
-        found.append(
-            Field(f"{path}.{name}_mm", _capital(f"{group}, {name}"), "tube", group, "number",
-                  "mm", value, round(low, 2), round(high, 2))
-        )  # fmt: skip
-    found.append(
-        Field(f"{path}.material", _capital(f"{group}, material"), "tube", group, "material", "",
-              tube.material.name)
-    )  # fmt: skip
-    return found
-
-
-def _length(path: str, label: str, place: str, owner: str, metres: float) -> Field:
-    value = metres * 1e3
-    low, high = sorted((round(value * 0.9), round(value * 1.1)))
-    if low == high:
-        low, high = low - 20, high + 20
-    return Field(path, label, place, owner, "number", "mm", value, low, high)
-
-
-def _capital(text: str) -> str:
-    return text[:1].upper() + text[1:]
+def _judged(groups: tuple[Group, ...], inputs: tuple[Input, ...]) -> tuple[Group, ...]:
+    """The groups without the paths that no longer vary, and without those left empty."""
+    known = {i.path for i in inputs}
+    kept = (replace(g, paths=tuple(p for p in g.paths if p in known)) for g in groups)
+    return tuple(g for g in kept if g.paths)
 
 
 def input_values(study: Study, unit: F64) -> Mapping[str, Any]:

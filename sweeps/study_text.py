@@ -10,6 +10,7 @@ from typing import Any
 from model.frame.layout import Hoop, Mass, Span, Station, Tube
 from model.frame.vocabulary import BRACING, ENTRIES
 from sweeps.inputs import Input
+from sweeps.links import Link
 from sweeps.study import Study
 
 
@@ -45,7 +46,11 @@ def write_study(study: Study) -> str:
         _table("[sweep]", {"samples": study.samples, "seed": study.seed, "method": study.method}),
         "[vary]",
         *(f"{_text(i.path)} = {_range(i)}" for i in study.inputs),
+        *(f"{_text(link.path)} = {_link(link)}" for link in study.links),
     ]
+    if study.groups:
+        groups = {_text(group.name): list(group.paths) for group in study.groups}
+        parts += ["", _table("[judge_together]", groups).rstrip()]
     return "\n".join(parts) + "\n"
 
 
@@ -120,13 +125,28 @@ def _mass(mass: Mass) -> str:
 
 def _range(given: Input) -> str:
     if not given.is_choice:
-        return f"{{ from = {_number(given.low)}, to = {_number(given.high)} }}"
+        rows: dict[str, Any] = {"from": given.low, "to": given.high}
+        if given.shape != "even":
+            extra = ("peak",) if given.shape == "triangular" else ("mean", "sd")
+            rows |= {"shape": given.shape, **{key: getattr(given, key) for key in extra}}
+        return _inline(rows)
     labels = given.option_labels
     if given.path.endswith(".stock"):
         name = str(labels[0]).split("/", 1)[0]
         sizes = _list(str(label).split("/", 1)[1] for label in labels)
         return f"{{ list = {_text(name)}, sizes = {sizes} }}"
     return f"{{ choices = {_list(labels)} }}"
+
+
+def _link(link: Link) -> str:
+    rows: dict[str, Any] = {"same_as": link.same_as}
+    if link.plus:
+        rows["plus"] = link.plus
+    return _inline(rows)
+
+
+def _inline(rows: dict[str, Any]) -> str:
+    return "{ " + ", ".join(f"{key} = {_any(value)}" for key, value in rows.items()) + " }"
 
 
 def _table(head: str, rows: dict[str, Any]) -> str:
