@@ -26,6 +26,10 @@ KERF = 0.002
 """Width of a saw cut [m]; common practice, no published source."""
 
 
+MOST_PATTERNS = 60
+"""Patterns that are added to the simple ones at most."""
+
+
 @dataclass(frozen=True)
 class Bar:
     """One stock length: the pieces sawn from it [m], and what is left over [m]."""
@@ -80,18 +84,21 @@ def cutting_plan(
     wanted = np.array([demand[round(float(v), 6)] for v in lengths], dtype=np.float64)
     room = stock_length + kerf + 1e-9
     taken = lengths + kerf
-    patterns = _generate(taken, wanted, room)
-    counts = _whole_bars(patterns, wanted)
+    simple = _first_fit(taken, wanted, room)
+    if len(simple) <= int(np.ceil(float(taken @ wanted) / room - 1e-9)):  # none can do better
+        patterns, counts = np.array(simple).T, np.ones(len(simple), dtype=np.int64)
+    else:
+        patterns = _generate(simple, taken, wanted, room)
+        counts = _whole_bars(patterns, wanted)
     bars = _bars(patterns, counts, lengths, wanted, stock_length, kerf)
     bought = stock_length * len(bars)
     return CuttingPlan(bars, stock_length, 1.0 - float(lengths @ wanted) / bought)
 
 
-def _generate(taken: F64, wanted: F64, room: float) -> F64:
-    """(pieces, patterns) columns: how many of each length a bar gives."""
-    patterns = [np.floor(room / t) * np.eye(len(taken))[k] for k, t in enumerate(taken)]
-    patterns += _first_fit(taken, wanted, room)
-    for _ in range(200):
+def _generate(simple: list[F64], taken: F64, wanted: F64, room: float) -> F64:
+    """(pieces, patterns) columns: how many of each length a bar gives, ``simple`` ones first."""
+    patterns = [*simple, *(np.floor(room / t) * np.eye(len(taken))[k] for k, t in enumerate(taken))]
+    for _ in range(MOST_PATTERNS):
         table = np.array(patterns).T
         found = linprog(
             np.ones(table.shape[1]), A_ub=-table, b_ub=-wanted, bounds=(0, None), method="highs"
@@ -102,6 +109,7 @@ def _generate(taken: F64, wanted: F64, room: float) -> F64:
             constraints=LinearConstraint(taken[None], -np.inf, room),
             bounds=Bounds(0, np.minimum(wanted, np.floor(room / taken))),
             integrality=np.ones(len(taken), dtype=np.int64),
+            options={"time_limit": 0.5},
         )
         if sack.x is None or float(price @ sack.x) <= 1 + 1e-9:
             break
@@ -130,7 +138,7 @@ def _whole_bars(patterns: F64, wanted: F64) -> NDArray[np.int64]:
         np.ones(patterns.shape[1]),
         constraints=LinearConstraint(patterns, wanted, np.inf),
         integrality=np.ones(patterns.shape[1], dtype=np.int64),
-        options={"time_limit": 10.0},
+        options={"time_limit": 5.0},
     )
     if found.x is None:
         raise RuntimeError(f"no cutting plan found: {found.message}")
