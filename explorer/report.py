@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence, Set
 from dataclasses import dataclass, field
 from html import escape
 from pathlib import Path
@@ -16,12 +16,15 @@ from explorer.numbers import count, number, percent, signed
 from explorer.plots_svg import profile_svg, share_bar
 from explorer.theme import LIGHT
 from explorer.units import METRIC, Units
-from explorer.views_svg import view_svg
+from explorer.views_svg import View, view_svg
 from model.frame.layout import Tube
 from model.frame.variants import every_brace
 from model.frame.vocabulary import RIGID
 from model.results.detail import Detail, bay_words, own_tubes
 from model.results.whatif import WhatIf, ranked
+
+_WIDTHS: dict[View, int] = {"side": 900, "plan": 900, "front": 620}
+"""Of the plain views [px]."""
 
 _STYLE = (Path(__file__).parent / "assets" / "report.css").read_text(encoding="utf-8")
 
@@ -99,8 +102,8 @@ def _views(detail: Detail, heading: str, units: Units) -> str:
     drawing = drawing_of_detail(detail, heading)
     first = view_svg(drawing, "3d", units=units, colour="value", ident="share")
     others = "\n".join(
-        f"<figure>{view_svg(drawing, view, units=units, ident='plain')}</figure>"
-        for view in ("side", "plan", "front")
+        f"<figure>{view_svg(drawing, view, units=units, width=width, ident='plain')}</figure>"
+        for view, width in _WIDTHS.items()
     )
     return (
         f'<section>\n<h2>The frame</h2>\n<figure class="wide">{first}<figcaption>Thick and dark: '
@@ -230,8 +233,10 @@ def _change(found: WhatIf, k: int, units: Units) -> tuple[str, ...]:
 def _to_build(detail: Detail) -> str:
     """The tables of the workshop; lengths in the units of the files, whatever is displayed."""
     bill = detail.bill
+    materials = {row.material for row in bill.stock}
+    of_one = f", all of {next(iter(materials))}" if len(materials) == 1 else ""
     cuts = [
-        (r["item"], r["group"], _tube(r), _one(r["length_mm"]), r["quantity"],
+        (r["item"], r["group"], _tube(r, not of_one), _one(r["length_mm"]), r["quantity"],
          _three(r["mass_kg"]), r["end_joints"])
         for r in cut_rows(bill)
     ]  # fmt: skip
@@ -240,7 +245,7 @@ def _to_build(detail: Detail) -> str:
         for r in joint_rows(bill)
     ]
     stock = [
-        (_tube(r), _three(r["length_m"]), _three(r["mass_kg"]), r["pieces"])
+        (_tube(r, True), _three(r["length_m"]), _three(r["mass_kg"]), r["pieces"])
         for r in stock_rows(bill)
     ]
     cut_head = ("Item", "Group", "Tube [mm]", "Length [mm]", "Quantity", "Mass [kg]",
@@ -251,15 +256,15 @@ def _to_build(detail: Detail) -> str:
         "<section>\n<h2>To build it</h2>\n<p>Lengths run between joint centres; x rearward from "
         "the front axle, y to the right, z up from the ground. Tube to buy is net, without "
         "cutting waste.</p>\n"
-        + _table("Cut list", cut_head, cuts, right={0, 3, 4, 5})
+        + _table(f"Cut list{of_one}", cut_head, cuts, right={0, 3, 4, 5}, whole={1, 2})
         + _table("Tube to buy", stock_head, stock, right={1, 2, 3})
-        + _table("Joints", joint_head, joints, right={1, 2, 3})
+        + _table("Joints", joint_head, joints, right={1, 2, 3}, whole={0})
         + "\n</section>"
     )
 
 
-def _tube(row: Mapping[str, object]) -> str:
-    return f"{row['shape']} {row['size_mm']}, {row['material']}"
+def _tube(row: Mapping[str, object], material: bool) -> str:
+    return f"{row['shape']} {row['size_mm']}" + (f", {row['material']}" if material else "")
 
 
 def _one(value: object) -> str:
@@ -295,14 +300,19 @@ def _table(
     caption: str,
     head: Sequence[str],
     rows: Iterable[Sequence[object]],
-    right: frozenset[int] | set[int] = frozenset(),
+    right: Set[int] = frozenset(),
+    whole: Set[int] = frozenset(),
 ) -> str:
-    """A table, or nothing when there are no rows; ``right``: columns that hold numbers."""
+    """A table, or nothing when there are no rows.
+
+    right : columns that hold numbers; whole : columns whose cells stay on one line.
+    """
 
     def cell(value: object, column: int, tag: str = "td", scope: str = "") -> str:
-        side = ' class="right"' if column in right else ""
+        kind = "right" if column in right else "whole" if column in whole else ""
+        kind = f' class="{kind}"' if kind else ""
         text = value if isinstance(value, _Raw) else escape(str(value))
-        return f"<{tag}{scope}{side}>{text}</{tag}>"
+        return f"<{tag}{scope}{kind}>{text}</{tag}>"
 
     lines = [
         "<tr>" + "".join(cell(value, c) for c, value in enumerate(row)) + "</tr>" for row in rows

@@ -340,6 +340,7 @@ def test_a_reader_who_leaves_early_is_no_fault():
     assert "Exception" not in err
 
 
+@pytest.mark.slow
 @pytest.mark.skipif(os.name == "nt", reason="sends the signal that Ctrl-C sends elsewhere")
 def test_ctrl_c_stops_a_sweep_cleanly_and_the_same_command_goes_on(tmp_path):
     folder = tmp_path / "run"
