@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from typing import Any
 
@@ -40,7 +40,7 @@ def edited(layout: Layout, path: str, value: Any) -> Layout:
     return with_value(layout, path, value)
 
 
-def equipment(rows: list[dict[str, Any]]) -> tuple[Mass, ...]:
+def equipment(rows: Sequence[Mapping[str, Any]]) -> tuple[Mass, ...]:
     """Pieces of equipment from rows with ``name, kg, x_mm, y_mm, z_mm``; empty cells count 0."""
     found = []
     for number, row in enumerate(rows, 1):
@@ -54,12 +54,15 @@ def equipment(rows: list[dict[str, Any]]) -> tuple[Mass, ...]:
 
 
 def nearest(stock: StockList, shape: str, sizes: Mapping[str, float]) -> StockSize:
-    """The size of a list that comes nearest in outside size and cross-section."""
+    """The size of a list that comes nearest: in cross-section, and twice as much in outside size.
+
+    The weights are a choice of ours: a tube that fits its neighbours is worth more than its mass.
+    """
     area = float(section_values(shape, sizes).A)
 
     def off(size: StockSize) -> float:
         outside = math.log(_outside(size.sizes) / _outside(sizes))
-        return abs(outside) + abs(math.log(size.area / area))
+        return 2 * abs(outside) + abs(math.log(size.area / area))
 
     return min(stock.sizes, key=off)
 
