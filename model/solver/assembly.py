@@ -27,12 +27,11 @@ Vector = tuple[Lanes, Lanes, Lanes]
 
 GIVEN = 12
 """Vectors of a group as packed: EA, EIy, EIz, GJ, 1/GAsy, 1/GAsz, six end flexibilities."""
-GROUP = 14
+GROUP = 12
 """Vectors of a group once prepared, see ``prepare_group``."""
-TURNED = 1
-"""What to add to the place of a group's end flexibilities seen from the to end."""
-NEAR = 10
-"""Place in a group of the end flexibilities: Iy at from, Iy at to, Iz at from, Iz at to."""
+NEAR = 8
+"""Place in a group of the bending flexibilities of the ends: Iy at from, at to, Iz at from, at
+to. Those of a member's later end start one further on where that is its to end."""
 X, Y, Z, LENGTH, PER_LENGTH, EA, T, IN_Y, IN_Z, MEMBER = 0, 3, 6, 9, 10, 11, 12, 13, 16, 19
 """Places in a prepared member's strip: local axes, L, 1/L, axial and torsional stiffness, k11,
 k12, k22 of bending with Iy and with Iz; their number."""
@@ -44,15 +43,13 @@ KINDS = 5
 
 @vector_code
 def prepare_group(code: Code, group: Strip, given: Strip) -> None:
-    """1/EA, 1/6EIy, 1/6EIz, 1/GJ, 1/GAsy, 1/GAsz, axial, torsion, -, -, four bending ends."""
+    """1/EA, 1/6EIy, 1/6EIz, 1/GJ, 1/GAsy, 1/GAsz, six end flexibilities."""
     group[0] = 1.0 / given[0]
     group[1] = 1.0 / (6.0 * given[1])
     group[2] = 1.0 / (6.0 * given[2])
     group[3] = 1.0 / given[3]
-    for k in range(4, 8):
+    for k in range(4, GROUP):
         group[k] = given[k]
-    for k in range(4):
-        group[NEAR + k] = given[8 + k]
 
 
 @dataclass(frozen=True)

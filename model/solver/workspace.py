@@ -12,7 +12,7 @@ motion      cases x joints x 6      forces, then y, then displacements
 place       joints x 3              joint positions
 here        members                 1 where the member is present
 given       groups x 12             section values and end flexibilities as they came
-group       groups x 14             the same as flexibilities
+group       groups x 12             the same as flexibilities
 member      members x 19            local axes and natural stiffness of each member
 energy      groups x 5              strain energy by group and kind
 slope       joints x 3              change of the compliance with the joint positions
