@@ -28,7 +28,7 @@ def layout_of(run: Run, frame: int) -> Layout:
     rows = run.design.rows
     if not 0 <= frame < rows:
         raise InputError("FRAME", str(frame), f"use a frame of the run, 0 to {rows - 1}")
-    return run.study.layout_at(run.design.unit()[frame])
+    return run.study.layout_at(run.design.row(frame))
 
 
 def row_of(run: Run, frame: int) -> pd.Series[Any]:

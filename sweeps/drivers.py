@@ -1,9 +1,4 @@
-"""Which input drives a result: Sobol' indices with intervals, a verdict and a sentence in words.
-
-Estimators as SALib uses them: first order after Saltelli et al., Computer Physics Communications
-181 (2010), total order after Jansen (1999), second order after Saltelli (2002). Intervals are
-normal ones from a bootstrap over base samples (Archer, Saltelli & Sobol', 1997).
-"""
+"""Which input drives a result: Sobol' indices with intervals, a verdict and a sentence in words."""
 
 from __future__ import annotations
 
@@ -14,48 +9,31 @@ import pandas as pd
 from numpy.typing import NDArray
 
 from model.errors import InputError
+from sweeps.failures import FAILURE_COLUMNS, failures
+from sweeps.indices import LITTLE, Bounds, Indices, bounds, indices
 from sweeps.outputs import OUTPUTS
 from sweeps.runs import Run, RunError
 
+__all__ = ["LITTLE", "Drivers", "Indices", "drivers", "indices", "response", "sentence", "verdict"]
+
 F64 = NDArray[np.float64]
-
-RESAMPLES = 200
-WIDTH = 1.959963984540054
-"""Half width of a 95 % interval in standard deviations."""
-
-LITTLE = 0.02
-"""Inputs whose total index stays below this are taken to matter little; common practice, no
-published source."""
-
-
-@dataclass(frozen=True, eq=False)
-class Indices:
-    """Indices of ``inputs`` inputs; intervals are half widths at 95 %.
-
-    second : (inputs, inputs), upper triangle, NaN elsewhere; None without second order.
-    settled : how many leading places of the ranking by total index are settled.
-    """
-
-    first: F64
-    first_interval: F64
-    total: F64
-    total_interval: F64
-    second: F64 | None
-    second_interval: F64 | None
-    order: NDArray[np.int64]
-    settled: int
 
 
 @dataclass(frozen=True, eq=False)
 class Drivers:
     """What drives one result column of a run.
 
-    table : one row an input, most important first: input, label, first, first_interval, total,
-        total_interval.
+    table : one row an input (or group of inputs that are judged together), most important first:
+        input (path; of a group its first), label, inputs (all paths), first, first_interval,
+        total, total_interval, and first_low, first_high, total_low, total_high: what the index
+        could be, whatever the frames that failed would have given. Equal to the index itself when
+        none failed.
     pairs : one row a pair of inputs that act together, strongest first: one, other, second,
-        second_interval.
+        second_interval, second_low, second_high.
     history : total index of each input from a quarter, a half and all of the samples.
     used, dropped : base samples behind the numbers, and those left out because a frame failed.
+    affected : numbers of the base samples left out. failed : the frames that failed, as
+        ``sweeps.failures.failures`` lists them.
     """
 
     output: str
@@ -66,6 +44,8 @@ class Drivers:
     sentence: str
     used: int
     dropped: int
+    affected: tuple[int, ...]
+    failed: pd.DataFrame
 
 
 def drivers(
@@ -76,120 +56,88 @@ def drivers(
     Raises
     ------
     InputError
-        No such column, or it does not vary. RunError: the run is not complete.
+        No such column, or it does not vary. RunError: the run is not complete, or a screening.
     """
     if output not in OUTPUTS:
         raise InputError("output", repr(output), f"use one of: {', '.join(OUTPUTS)}")
+    if run.study.method != "sobol":
+        raise RunError(f"{run.folder}: is a screening and has elementary effects, no shares of "
+                       "the variation; sweep with method sobol for those")  # fmt: skip
     if not run.complete:
         raise RunError(f"{run.folder}: {run.rows_solved} of {run.design.rows} frames are solved; "
                        "resume the sweep before asking what drives it")  # fmt: skip
-    table = run.table() if table is None else table
-    design = run.design
+    if table is None:
+        paths = [i.path for i, _ in run.study.drawn]
+        table = run.table((*FAILURE_COLUMNS, output))
+        if not np.isfinite(table[output]).all():
+            table = run.table((*FAILURE_COLUMNS, *paths, output))
+    design, judged = run.design, run.study.judged
     results = table[output].to_numpy(np.float64).reshape(design.samples, -1)
     whole = np.isfinite(results).all(axis=1)
-    results = results[whole]
+    sound = results[whole]
     used = int(whole.sum())
     if used < 8:
         raise RunError(f"{run.folder}: only {used} base samples have no failed frame; "
                        "narrow the ranges")  # fmt: skip
-    if np.ptp(results) <= 1e-12 * np.abs(results).max():
+    if np.ptp(sound) <= 1e-12 * np.abs(sound).max():
         raise InputError("output", output, "it is the same for every frame: nothing drives it")
-    found = indices(results, len(run.study.inputs), run.second_order)
-    labels = [i.label for i in run.study.inputs]
-    paths = [i.path for i in run.study.inputs]
+    found = indices(sound, design.judged, run.second_order)
+    dropped = len(whole) - used
+    could = bounds(results, design.judged, run.second_order) if dropped else None
+    labels = [group.name for group in judged]
     rows = pd.DataFrame(
         {
-            "input": paths,
+            "input": [group.paths[0] for group in judged],
             "label": labels,
+            "inputs": [", ".join(group.paths) for group in judged],
             "first": found.first,
             "first_interval": found.first_interval,
             "total": found.total,
             "total_interval": found.total_interval,
+            "first_low": found.first if could is None else np.fmin(found.first, could.first[0]),
+            "first_high": found.first if could is None else np.fmax(found.first, could.first[1]),
+            "total_low": found.total if could is None else np.fmin(found.total, could.total[0]),
+            "total_high": found.total if could is None else np.fmax(found.total, could.total[1]),
         }
     ).iloc[found.order]
-    dropped = len(whole) - used
+    failed = failures(table, output)
     return Drivers(
         output,
         rows.reset_index(drop=True),
-        _pairs(found, labels),
-        _history(results, labels, run.second_order),
-        verdict(found, used, dropped),
+        _pairs(found, could, labels),
+        _history(sound, labels, run.second_order),
+        verdict(found, used, dropped, could, len(failed)),
         sentence(found, labels, output),
         used,
         dropped,
+        tuple(np.flatnonzero(~whole).tolist()),
+        failed,
     )
 
 
-def indices(
-    results: F64, inputs: int, second_order: bool, resamples: int = RESAMPLES, seed: int = 1
-) -> Indices:
-    """Indices from results (base samples, rows of a base sample) in the design's order."""
-    a, b = results[:, 0], results[:, -1]
-    ab = results[:, 1 : inputs + 1]
-    ba = results[:, inputs + 1 : 2 * inputs + 1] if second_order else None
-    spread = results.std()
-    middle = results.mean()
-    a, b, ab = (a - middle) / spread, (b - middle) / spread, (ab - middle) / spread
-    ba = None if ba is None else (ba - middle) / spread
-    first, total, second = _estimate(a, b, ab, ba)
-    random = np.random.default_rng(seed)
-    draws = random.integers(0, len(a), (resamples, len(a)))
-    firsts, totals = np.empty((2, resamples, inputs))
-    seconds = None if ba is None else np.empty((resamples, inputs, inputs))
-    for k, draw in enumerate(draws):
-        again = _estimate(a[draw], b[draw], ab[draw], None if ba is None else ba[draw])
-        firsts[k], totals[k] = again[0], again[1]
-        if seconds is not None:
-            seconds[k] = again[2]
-    order = np.argsort(-total, kind="stable")
-    return Indices(
-        first,
-        WIDTH * firsts.std(axis=0, ddof=1),
-        total,
-        WIDTH * totals.std(axis=0, ddof=1),
-        second,
-        None if seconds is None else WIDTH * seconds.std(axis=0, ddof=1),
-        order,
-        _settled(total[order], totals[:, order]),
-    )
+def verdict(
+    found: Indices, used: int, dropped: int, could: Bounds | None = None, failed: int = 0
+) -> str:
+    """Whether the ranking can be relied on, in words.
 
-
-def _estimate(a: F64, b: F64, ab: F64, ba: F64 | None) -> tuple[F64, F64, F64 | None]:
-    both = np.concatenate([a, b])
-    variance = both.var()
-    first = (b[:, None] * (ab - a[:, None])).mean(axis=0) / variance
-    gap = a[:, None] - ab
-    total = 0.5 * (gap * gap).mean(axis=0) / variance
-    if ba is None:
-        return first, total, None
-    second = np.full((ab.shape[1], ab.shape[1]), np.nan)
-    base = a * b
-    for j in range(ab.shape[1] - 1):
-        pair = (ba[:, [j]] * ab[:, j + 1 :] - base[:, None]).mean(axis=0) / variance
-        second[j, j + 1 :] = pair - first[j] - first[j + 1 :]
-    return first, total, second
-
-
-def _settled(total: F64, totals: F64) -> int:
-    """Leading places whose order the bootstrap does not question; ``totals`` is ranked alike."""
-    for place in range(len(total) - 1):
-        if total[place] < LITTLE:
-            return place
-        gap = totals[:, place] - totals[:, place + 1]
-        if np.quantile(gap, 0.025) <= 0:
-            return place
-    return len(total)
-
-
-def verdict(found: Indices, used: int, dropped: int) -> str:
-    """Whether the ranking can be relied on, in words."""
+    used, dropped : base samples behind the numbers and left out. could : bounds when some are
+    left out. failed : frames that failed.
+    """
     matter = int((found.total >= LITTLE).sum())
-    if found.settled >= matter:
+    settled = found.settled if could is None else min(found.settled, _beyond_doubt(found, could))
+    if settled < min(found.settled, matter):
+        text = (
+            "Ranking not settled: frames that failed could change it."
+            if settled == 0
+            else f"Ranking settled for the first {_places(settled)}; frames that failed could "
+            "change the rest."
+        )
+    elif found.settled >= matter:
         text = "Ranking settled."
     elif found.settled == 0:
         text = "Ranking not settled yet: add samples."
     else:
-        places = "place" if found.settled == 1 else f"{found.settled} places"
+        places = _places(found.settled)
         text = f"Ranking settled for the first {places}; add samples for the rest."
     if dropped:
         share = dropped / (used + dropped)
@@ -197,7 +145,31 @@ def verdict(found: Indices, used: int, dropped: int) -> str:
             f" {dropped} of {used + dropped} base samples ({share:.1%}) hold a frame that failed "
             "and are left out; the numbers hold for the frames that can be built."
         )
+        if failed:
+            text = text.replace("hold a frame that failed", f"hold the {failed} that failed")
+    if could is not None:
+        moved = max(
+            float(np.abs(could.total - found.total).max()),
+            float(np.abs(could.first - found.first).max()),
+        )
+        text += (
+            " Had those frames given anything within the range of the others, no index would "
+            f"differ by more than {moved:.2g}."
+        )
     return text
+
+
+def _places(count: int) -> str:
+    return "place" if count == 1 else f"{count} places"
+
+
+def _beyond_doubt(found: Indices, could: Bounds) -> int:
+    """Leading places of the ranking that no result of the missing frames could change."""
+    low, high = could.total[0][found.order], could.total[1][found.order]
+    for place in range(len(low) - 1):
+        if low[place] <= high[place + 1 :].max():
+            return place
+    return len(low)
 
 
 def sentence(found: Indices, labels: list[str], output: str) -> str:
@@ -212,12 +184,15 @@ def sentence(found: Indices, labels: list[str], output: str) -> str:
     return text.replace("%", " %")
 
 
-def _pairs(found: Indices, labels: list[str]) -> pd.DataFrame:
-    columns = ["one", "other", "second", "second_interval"]
+def _pairs(found: Indices, could: Bounds | None, labels: list[str]) -> pd.DataFrame:
+    columns = ["one", "other", "second", "second_interval", "second_low", "second_high"]
     if found.second is None or found.second_interval is None:
         return pd.DataFrame({c: [] for c in columns})
     j, k = np.triu_indices(len(labels), 1)
     value, interval = found.second[j, k], found.second_interval[j, k]
+    low, high = (value, value)
+    if could is not None and could.second is not None:
+        low, high = np.fmin(value, could.second[0][j, k]), np.fmax(value, could.second[1][j, k])
     order = np.argsort(-np.abs(value), kind="stable")
     return pd.DataFrame(
         {
@@ -225,6 +200,8 @@ def _pairs(found: Indices, labels: list[str]) -> pd.DataFrame:
             "other": [labels[n] for n in k[order]],
             "second": value[order],
             "second_interval": interval[order],
+            "second_low": low[order],
+            "second_high": high[order],
         }
     )
 

@@ -6,13 +6,15 @@ import numpy as np
 import pandas as pd
 from numpy.typing import NDArray
 
+from model.frame.batch import Batch
 from model.frame.variants import variants
 from model.results.twist import Answers, answers, loose
+from sweeps.failures import OK
 from sweeps.study import Study
 
-F64 = NDArray[np.float64]
+__all__ = ["OK", "evaluate"]
 
-OK = "ok"
+F64 = NDArray[np.float64]
 
 
 def evaluate(
@@ -39,13 +41,29 @@ def evaluate(
         for name, values in _columns(found).items():
             results[name][batch.rows] = values
         for k in np.flatnonzero(found.status):
-            status[batch.rows[k]] = f"loose: {loose(batch, int(found.status[k]))}"
+            status[batch.rows[k]] = _reason(batch, int(k), int(found.status[k]))
+    lacking = ~np.isfinite(np.stack([*results.values()])).all(axis=0) & (status == OK)
+    for row in np.flatnonzero(lacking):
+        names = ", ".join(n for n, values in results.items() if not np.isfinite(values[row]))
+        status[row] = f"no result: {names}"
     table = study.table(unit)
     table.insert(0, "frame", np.arange(first_frame, first_frame + len(unit)))
     for name, values in results.items():
         table[name] = values[again]
     table["status"] = status[again].astype(str)
     return table
+
+
+def _reason(batch: Batch, k: int, code: int) -> str:
+    """Why frame ``k`` of a batch was not solved."""
+    places = np.isfinite(batch.xyz[k]).all(axis=1)
+    if not places.all():
+        joint = batch.skeleton.joints[int(np.argmin(places))]
+        return f"no number: position of joint {joint}"
+    whole = np.isfinite(batch.rigidity[k]).all(axis=1) & np.isfinite(batch.line_mass[k])
+    if not whole.all():
+        return f"no number: section of {batch.skeleton.groups[int(np.argmin(whole))]}"
+    return f"loose: {loose(batch, code)}"
 
 
 _COLUMNS = (

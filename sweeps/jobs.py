@@ -53,22 +53,20 @@ def carry_out(
         rows = run.design.rows
         solved = rows - len(missing) * _block_rows(run)
         before, failed = solved, 0
-        drawing = time.perf_counter()
-        unit = run.design.unit() if missing else None
-        drawn = time.perf_counter() - drawing
-        solving = writing = 0.0
+        drawing = solving = writing = 0.0
         state = DONE
         tell(Progress(rows, solved, failed, 0.0, 0.0, RUNNING))
         for block in missing:
             if stop():
                 state = CANCELLED
                 break
-            assert unit is not None
-            place = run.rows_of(block)
+            begin = time.perf_counter()
+            unit = run.unit_of(block)
             start = time.perf_counter()
-            table = evaluate(run.study, unit[place], place.start, threads)
+            table = evaluate(run.study, unit, run.rows_of(block).start, threads)
             middle = time.perf_counter()
             run.write_block(block, table)
+            drawing += start - begin
             solving += middle - start
             writing += time.perf_counter() - middle
             failed += int((table["status"] != OK).sum())
@@ -78,7 +76,7 @@ def carry_out(
         seconds = time.perf_counter() - began
         if solved > before:
             rate = (solved - before) / seconds
-            times = {"drawing": drawn, "building_and_solving": solving, "writing": writing}
+            times = {"drawing": drawing, "building_and_solving": solving, "writing": writing}
             run.note(
                 rows_per_second=round(rate),
                 seconds={key: round(value, 4) for key, value in times.items()},

@@ -9,10 +9,11 @@ trusted and never deleted.
 
 from __future__ import annotations
 
+import errno
 import hashlib
 import json
 import os
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass, replace
 from pathlib import Path
@@ -20,6 +21,7 @@ from typing import Any
 
 import numpy as np
 import pandas as pd
+from numpy.typing import NDArray
 
 from model.errors import DesignError, InputError
 from sweeps.sampling import Design
@@ -57,8 +59,7 @@ class Run:
     @property
     def design(self) -> Design:
         """The rows that the run is made of."""
-        study = self.study
-        return Design(len(study.inputs), study.samples, self.second_order, study.seed)
+        return self.study.design(self.second_order)
 
     @property
     def samples_per_block(self) -> int:
@@ -103,10 +104,19 @@ class Run:
             rows.to_parquet(scratch, index=False)
             os.replace(scratch, path)
 
-    def table(self) -> pd.DataFrame:
-        """All solved rows, in the order of the design."""
+    def unit_of(self, block: int) -> NDArray[np.float64]:
+        """(rows, inputs) points in the unit cube of one block."""
+        count = self.samples_per_block
+        return self.design.unit(block * count, count)
+
+    def table(self, columns: Sequence[str] | None = None) -> pd.DataFrame:
+        """All solved rows, in the order of the design.
+
+        columns : only these are read from disk; all when not given.
+        """
+        wanted = None if columns is None else list(dict.fromkeys(columns))
         parts = [
-            pd.read_parquet(self.path_of(block))
+            pd.read_parquet(self.path_of(block), columns=wanted)
             for block in self.blocks
             if self.path_of(block).exists() and self._sound(block)
         ]
@@ -179,7 +189,7 @@ def prepare(study: Study, folder: str | Path, second_order: bool = True) -> Run:
         The folder holds something else, or a run of another study; nothing is touched.
     """
     folder = Path(folder)
-    Design(len(study.inputs), study.samples, second_order, study.seed)
+    study.design(second_order)
     if (folder / "run.json").exists():
         run = open_run(folder)
         if digest(study, second_order) != digest(run.study, run.second_order):
@@ -261,7 +271,8 @@ def set_aside(path: Path) -> Path:
     for number in range(1, 1000):
         other = path.with_name(f"{path.name}.set-aside-{number}")
         if not other.exists():
-            os.replace(path, other)
+            with _naming(path):
+                os.replace(path, other)
             return other
     raise RunError(f"{path}: too many set-aside files; look at them and clear them away")
 
@@ -274,8 +285,8 @@ def _naming(path: Path) -> Iterator[None]:
     except PermissionError as fault:
         raise RunError(f"{path}: may not be written; choose a folder of your own") from fault
     except OSError as fault:
-        import errno
-
+        if fault.errno == errno.EROFS:
+            raise RunError(f"{path}: may not be written; choose a folder of your own") from fault
         remedy = "free some space and resume" if fault.errno == errno.ENOSPC else "see the folder"
         raise RunError(f"{path}: {fault.strerror or fault}; {remedy}") from fault
 

@@ -16,13 +16,12 @@ from model.frame.layout import Layout
 from sweeps.fields import Field, field, fields, with_value
 from sweeps.inputs import Input
 from sweeps.links import Group, Link, check_groups, check_links, follower
+from sweeps.sampling import METHODS, Design
 
 __all__ = ["METHODS", "Field", "Group", "Link", "Study", "field", "fields", "input_values",
            "with_value"]  # fmt: skip
 
 F64 = NDArray[np.float64]
-
-METHODS = ("sobol",)
 
 
 @dataclass(frozen=True)
@@ -87,6 +86,21 @@ class Study:
             for link in self.links
         )
         return (*((i, k) for k, i in enumerate(self.inputs)), *linked)
+
+    @property
+    def judged(self) -> tuple[Group, ...]:
+        """What a sweep judges: the groups, and each other input by its label, in their order."""
+        of = {path: group for group in self.groups for path in group.paths}
+        alone = (of.get(i.path) or Group(i.label, (i.path,)) for i in self.inputs)
+        return tuple(dict.fromkeys(alone))
+
+    def design(self, second_order: bool = True) -> Design:
+        """The rows to solve."""
+        parts: tuple[int, ...] = ()
+        if self.groups:
+            place = {path: k for k, group in enumerate(self.judged) for path in group.paths}
+            parts = tuple(place[i.path] for i in self.inputs)
+        return Design(len(self.inputs), self.samples, second_order, self.seed, self.method, parts)
 
     def columns(self, unit: F64) -> dict[str, Column]:
         """Columns for ``model.frame.variants`` from rows in the unit cube (n, inputs)."""
