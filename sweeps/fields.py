@@ -69,7 +69,7 @@ def fields(layout: Layout) -> tuple[Field, ...]:
             found.append(
                 _length(f"{path}.{name}_mm", _capital(words), "station", station.name, value)
             )
-        if layout.tall(k):
+        if layout.tall(k) and not station.clear:
             found.append(
                 Field(f"{path}.ring", _capital(f"{station.name}, ring bracing"), "station",
                       station.name, "bracing", "", station.ring)

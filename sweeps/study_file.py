@@ -22,7 +22,8 @@ from sweeps.study_vary import read_groups, read_vary
 _VEHICLE = ("name", "about", "wheelbase_mm", "track_front_mm", "track_rear_mm", "front_axle",
             "rear_axle", "front_mount", "rear_mount", "entry")  # fmt: skip
 _STATION = ("name", "at", "width_low_mm", "width_high_mm", "height_low_mm", "height_high_mm",
-            "ring", "bottom", "top", "uprights", "outrigger_mm")  # fmt: skip
+            "ring", "bottom", "top", "uprights", "outrigger_mm",
+            "clear")  # fmt: skip
 _SPAN = ("name", "bays", *FACES, "sides", "clear", "upper", "tube")
 _HOOP = ("name", "station", "height_mm", "width_mm", "lean_mm", "stays_to", "bracing")
 _MASS = ("name", "kg", "x_mm", "y_mm", "z_mm")
@@ -115,6 +116,7 @@ def _station(row: Table) -> Station:
         top=read.flag(where, row, "top"),
         uprights=read.flag(where, row, "uprights"),
         outrigger=read.mm(where, row, "outrigger_mm", 0.0),
+        clear=read.flag(where, row, "clear", False),
     )
 
 

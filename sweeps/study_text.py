@@ -70,6 +70,8 @@ def _station(station: Station, tall: bool) -> str:
     rows |= {key: False for key in ("bottom", "top", "uprights") if not getattr(station, key)}
     if station.outrigger > 0:
         rows["outrigger_mm"] = _mm(station.outrigger)
+    if station.clear:
+        rows["clear"] = True
     return _table("[[station]]", rows)
 
 

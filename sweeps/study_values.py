@@ -92,9 +92,9 @@ def whole(where: str, row: Table, key: str, default: int) -> int:
     return found
 
 
-def flag(where: str, row: Table, key: str) -> bool:
-    """True or false; true when it is missing."""
-    value = row.get(key, True)
+def flag(where: str, row: Table, key: str, default: bool = True) -> bool:
+    """True or false; ``default`` when it is missing."""
+    value = row.get(key, default)
     if not isinstance(value, bool):
         raise InputError(f"{where}.{key}", repr(value), "write true or false")
     return value

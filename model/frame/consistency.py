@@ -61,7 +61,7 @@ def check_layout(layout: Layout) -> None:
 
 def _check_station(layout: Layout, station: Station, tall: bool) -> None:
     path = f"station.{station.name}.ring"
-    check_ring(path, station.ring)
+    check_ring(station, station.ring)
     if station.ring != "open" and not tall:
         raise InputError(path, station.ring, "set it open: there is no upper rail here to brace to")
     at_axle = {layout.front_axle: layout.front_mount, layout.rear_axle: layout.rear_mount}
@@ -102,9 +102,12 @@ def _check_hoop(layout: Layout, hoop: Hoop) -> None:
         )
 
 
-def check_ring(path: str, bracing: str) -> None:
-    """Refuse a bracing that a ring cannot have."""
+def check_ring(station: Station, bracing: str) -> None:
+    """Refuse a bracing that the ring of this station cannot have."""
+    path = f"station.{station.name}.ring"
     _check_bracing(path, bracing)
+    if bracing != "open" and station.clear:
+        raise InputError(path, bracing, "set it open: this ring must stay clear")
     if bracing == "K":
         raise InputError(path, bracing, "use chevron: a K would brace one side only")
 

@@ -26,6 +26,7 @@ class Station:
         own members are there.
     outrigger : distance between the outer ends of the outriggers at the lower rails [m], 0 for
         none. Outer ends of neighbouring stations are joined by sills.
+    clear : the ring must stay open, because legs or an engine pass through it.
     """
 
     name: str
@@ -39,6 +40,7 @@ class Station:
     top: bool = True
     uprights: bool = True
     outrigger: float = 0.0
+    clear: bool = False
 
 
 @dataclass(frozen=True)

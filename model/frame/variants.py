@@ -123,7 +123,7 @@ def brace_paths(layout: Layout) -> dict[str, str]:
 
     found = {}
     for k, station in enumerate(layout.stations):
-        if layout.tall(k) and has_tube("ring braces"):
+        if layout.tall(k) and not station.clear and has_tube("ring braces"):
             found[f"station.{station.name}.ring"] = station.ring
     for span in layout.spans:
         for face in FACES:
@@ -150,7 +150,7 @@ def _patterns(values: Values) -> tuple[dict[str, NDArray[np.int64]], dict[str, f
 
     for station in layout.stations:
         path = f"station.{station.name}.ring"
-        take(path, station.ring, path, partial(check_ring, path))
+        take(path, station.ring, path, partial(check_ring, station))
     for span in layout.spans:
         both = f"span.{span.name}.sides"
         for face in FACES:

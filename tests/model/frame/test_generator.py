@@ -7,7 +7,7 @@ import pytest
 
 from model.errors import InputError
 from model.frame.layout import Hoop, Layout, Span, Station, with_span, with_station, with_tube
-from model.frame.variants import Choice, Column, one, variants
+from model.frame.variants import Choice, Column, brace_paths, one, variants
 from model.results.twist import answers
 from tests.model.frame.layouts import STEEL, box, ladder, random_layout, round_tube
 
@@ -166,6 +166,14 @@ def test_a_brace_across_a_face_that_must_stay_clear_is_refused() -> None:
             {"span.middle.top": Choice(("open", "cross"), np.array([0, 1]))},
             2,
         )
+
+
+def test_a_ring_that_must_stay_clear_takes_no_brace_and_is_offered_none() -> None:
+    layout = with_station(box(ring="open"), "rear", clear=True)
+    with pytest.raises(InputError, match=r"station.rear.ring = single: set it open"):
+        with_station(layout, "rear", ring="single")
+    assert "station.front.ring" in brace_paths(layout)
+    assert "station.rear.ring" not in brace_paths(layout)
 
 
 def test_a_ladder_has_no_ring_to_brace_and_no_linkage() -> None:
