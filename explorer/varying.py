@@ -90,7 +90,7 @@ def bracings(layout: Layout, path: str) -> list[str]:
     for option in BRACING:
         try:
             if kind == "station":
-                check_ring(path, option)
+                check_ring(layout.station(owner), option)
             else:
                 check_face(layout.span(owner), "left" if name == "sides" else name, option)
         except InputError:
