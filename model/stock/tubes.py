@@ -3,8 +3,10 @@
 from __future__ import annotations
 
 import csv
+import math
 from collections.abc import Mapping
 from dataclasses import dataclass
+from typing import Literal
 
 from model.errors import InputError
 from model.stock.sections import SHAPES, section_values
@@ -52,6 +54,57 @@ class StockList:
         return ", ".join(s.label for s in self.sizes)
 
 
+def next_size(
+    stock: StockList, sizes: Mapping[str, float], rule: Literal["up", "nearest"] = "up"
+) -> tuple[StockSize, str]:
+    """The size of a list to buy for wanted sizes [m], and in words what that changes.
+
+    rule : ``up``, the lightest size that is nowhere smaller than wanted; ``nearest``, whichever
+        differs least in outside sizes (counted twice) and area, by ratio: a choice of ours, as a
+        tube that fits its neighbours is worth more than its mass.
+
+    Raises
+    ------
+    InputError
+        Sizes that cannot be, or nothing on the list large enough.
+    """
+    names = SHAPES[stock.shape].sizes
+    area = float(section_values(stock.shape, sizes).A)
+    wanted = " x ".join(f"{sizes[n] / _METRES[stock.unit]:.4g}" for n in names)
+    if rule == "up":
+        # the last digit may be off after a conversion from inches
+        fits = [s for s in stock.sizes if all(s.sizes[n] >= sizes[n] * (1 - 1e-9) for n in names)]
+        if not fits:
+            most = " x ".join(
+                f"{max(s.sizes[n] for s in stock.sizes) / _METRES[stock.unit]:g}" for n in names
+            )
+            remedy = f"no size of {stock.name} is as large ({most} at most): use another list"
+            raise InputError("stock", f"{wanted} {stock.unit}", remedy)
+        best = min(fits, key=lambda s: s.area)
+    elif rule == "nearest":
+        outside = [n for n in names if n != "wall"]
+
+        def off(size: StockSize) -> float:
+            ratios = [abs(math.log(size.sizes[n] / sizes[n])) for n in outside]
+            return 2 * sum(ratios) / len(ratios) + abs(math.log(size.area / area))
+
+        best = min(stock.sizes, key=off)
+    else:
+        raise InputError("rule", repr(rule), "use up or nearest")
+    changes = [_change(n, best.sizes[n] / sizes[n]) for n in names]
+    told = [c for c in changes if c]
+    if not told:
+        return best, f"{best.label} {stock.unit} as wanted"
+    told.append(_change("mass per metre", best.area / area) or "mass per metre as before")
+    return best, f"{best.label} {stock.unit} instead of {wanted}: {', '.join(told)}"
+
+
+def _change(what: str, ratio: float) -> str:
+    """Such as ``wall +5.3 %``; nothing when it is less than a twentieth of a per cent."""
+    percent = round((ratio - 1) * 100, 1)
+    return f"{what} {percent:+.1f} %" if percent else ""
+
+
 def parse_stock(name: str, text: str) -> StockList:
     """A stock list from CSV text.
 
@@ -64,7 +117,7 @@ def parse_stock(name: str, text: str) -> StockList:
         Names the line and column at fault.
     """
     facts: dict[str, str] = {}
-    lines = text.splitlines()
+    lines = text.removeprefix("\ufeff").splitlines()
     body = [(n, line) for n, line in enumerate(lines, 1) if line.strip() and line[0] != "#"]
     for line in lines:
         if line.startswith("#") and ":" in line:
@@ -83,6 +136,14 @@ def parse_stock(name: str, text: str) -> StockList:
             f"{name} line {body[0][0]}", ",".join(header), f"use {','.join(SHAPES[shape].sizes)}"
         )
     sizes = [_size(name, shape, _METRES[unit], header, number, line) for number, line in body[1:]]
+    if not sizes:
+        raise InputError(name, "no sizes", "give at least one size below the header line")
+    seen: dict[str, int] = {}
+    for (number, _), size in zip(body[1:], sizes, strict=True):
+        if size.label in seen:
+            first = f"it stands in line {seen[size.label]} already"
+            raise InputError(f"{name} line {number}", size.label, f"{first}: leave one out")
+        seen[size.label] = number
     sizes.sort(key=lambda s: s.area)
     standard = facts.get("standard", "")
     return StockList(name, facts.get("name", name), shape, unit, standard, tuple(sizes))
