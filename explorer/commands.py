@@ -131,12 +131,19 @@ def _sweep(chosen: argparse.Namespace) -> int:
 
 
 def _drivers(chosen: argparse.Namespace) -> int:
-    from explorer.run_accounts import column_of, drivers_record, drivers_text
+    from explorer import run_accounts
     from sweeps.drivers import drivers
+    from sweeps.screening import screening
 
-    run = _opened(chosen.folder)
-    found = drivers(run, column_of(chosen.output))
-    _answer(chosen, drivers_record(run, found), lambda: drivers_text(run, found))
+    run, output = _opened(chosen.folder), run_accounts.column_of(chosen.output)
+    if run.study.method == "screening":
+        effects = screening(run, output)
+        record = run_accounts.screening_record(run, effects)
+        _answer(chosen, record, lambda: run_accounts.screening_text(run, effects))
+        return DONE
+    found = drivers(run, output)
+    record = run_accounts.drivers_record(run, found)
+    _answer(chosen, record, lambda: run_accounts.drivers_text(run, found))
     return DONE
 
 
@@ -167,7 +174,7 @@ def _detail(chosen: argparse.Namespace) -> int:
         "name": subject.name,
         "frame": chosen.frame,
         **frame_record(detail),
-        "inputs": {given.path: row[given.path] for given in run.study.inputs},
+        "inputs": {given.path: row[given.path] for given, _ in run.study.drawn},
         "files": [str(into / name) for name in CONTENTS],
     }
     written = pairs([(str(into / name), what) for name, what in CONTENTS.items()])
@@ -229,7 +236,7 @@ def _parser() -> argparse.ArgumentParser:
                     help="base samples, a power of two; without it the study's own")  # fmt: skip
     it.add_argument("--into", required=True, metavar="FOLDER", help="the run folder")
     it.add_argument("--seed", type=_whole("--seed", 1), metavar="S", help="1 or more")
-    it.add_argument("--method", metavar="M", help="how frames are drawn")
+    it.add_argument("--method", metavar="M", help="sobol (shares) or screening (effects)")
     it = command("drivers", _drivers, "Say which inputs drive an output, and how surely.")
     it.add_argument("folder", metavar="FOLDER", help=folder)
     it.add_argument("--output", default="twist_Nm_per_deg", metavar="COLUMN",

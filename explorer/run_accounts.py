@@ -13,6 +13,7 @@ from sweeps.front import Front
 from sweeps.jobs import Progress
 from sweeps.outputs import OUTPUTS
 from sweeps.runs import Run
+from sweeps.screening import Screening
 
 KEYS = {"twist_per_kg": "twist_Nm_per_deg_per_kg"}
 """Keys of records where a column's own name lacks the unit."""
@@ -24,6 +25,10 @@ _PART = 0.005
 _INDICES = (
     "Alone: first-order index, the part of the variation that this input explains by itself.\n"
     "With others: total index, with all it does together with other inputs. ± at 95 %."
+)
+_EFFECTS = (
+    "Effect: mean change, whatever its sign, for a full step across the input's range, ± at 95 %.\n"
+    "Mean: the same with sign. Spread: large where the effect bends or hangs on other inputs."
 )
 _HEADS = {
     "mass_kg": "Mass [kg]",
@@ -82,6 +87,7 @@ def drivers_record(run: Run, found: Drivers) -> dict[str, Any]:
         "verdict": found.verdict,
         "samples_used": found.used,
         "samples_dropped": found.dropped,
+        "frames_failed": len(found.failed),
         "drivers": _records(found.table),
         "pairs": _records(found.pairs),
     }
@@ -120,9 +126,45 @@ def drivers_text(run: Run, found: Drivers) -> str:
     return "\n\n".join([*parts, found.verdict])
 
 
+def screening_record(run: Run, found: Screening) -> dict[str, Any]:
+    """Elementary effects of every input, in the unit of the output; intervals at 95 %."""
+    return {
+        "folder": str(run.folder),
+        "name": run.study.name,
+        "output": KEYS.get(found.output, found.output),
+        "verdict": found.verdict,
+        "trajectories_used": found.used,
+        "trajectories_dropped": found.dropped,
+        "frames_failed": len(found.failed),
+        "effects": _records(found.table),
+    }
+
+
+def screening_text(run: Run, found: Screening) -> str:
+    """What matters at all, for a person."""
+    output = OUTPUTS[found.output]
+    rows = [
+        (
+            str(row["label"]),
+            *(number(float(row[c])) for c in ("effect", "effect_interval", "mean", "spread")),
+        )
+        for _, row in found.table.iterrows()
+    ]
+    unit = f" [{output.unit}]" if output.unit else ""
+    head = ("Input", f"Effect{unit}", "±", "Mean", "Spread")
+    return "\n\n".join(
+        [
+            f"{run.study.name}: what matters at all for {output.label}",
+            table(head, rows, right=range(1, 5)),
+            _EFFECTS,
+            found.verdict,
+        ]
+    )
+
+
 def front_record(run: Run, found: Front) -> dict[str, Any]:
     """The frames that no other frame beats, lightest first."""
-    inputs = [given.path for given in run.study.inputs]
+    inputs = [given.path for given, _ in run.study.drawn]
     return {
         "folder": str(run.folder),
         "name": run.study.name,

@@ -16,7 +16,7 @@ def starting_frame(study: Study) -> Subject:
     """The frame that a study starts from."""
     inputs = tuple(
         (_labelled(given.label, given.unit), _value(value))
-        for given, value in zip(study.inputs, starting_values(study).values(), strict=True)
+        for (given, _), value in zip(study.drawn, starting_values(study).values(), strict=True)
     )
     return Subject(
         name=study.name,
@@ -29,7 +29,7 @@ def starting_frame(study: Study) -> Subject:
 
 def starting_values(study: Study) -> dict[str, Any]:
     """What the inputs of a study are in its starting frame, by path, in the units of files."""
-    values = {given.path: field(study.layout, given.path).value for given in study.inputs}
+    values = {given.path: field(study.layout, given.path).value for given, _ in study.drawn}
     return {
         path: float(f"{value:.12g}") if isinstance(value, float) else value  # 1900.0000000000002
         for path, value in values.items()
@@ -45,7 +45,8 @@ def frame_of_run(run: Run, frame: int) -> Subject:
         title=f"Frame {frame}",
         about=study.about,
         inputs=tuple(
-            (_labelled(given.label, given.unit), _value(row[given.path])) for given in study.inputs
+            (_labelled(given.label, given.unit), _value(row[given.path]))
+            for given, _ in study.drawn
         ),
         origin=(
             ("Run", run.name),

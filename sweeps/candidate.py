@@ -10,7 +10,7 @@ import pandas as pd
 from model.errors import InputError
 from model.frame.layout import Layout
 from model.results.detail import Detail, examine
-from sweeps.evaluate import OK
+from sweeps.failures import OK
 from sweeps.runs import Run, RunError
 
 AGREES = 1e-9

@@ -24,6 +24,7 @@ from sweeps.evaluate import evaluate
 from sweeps.front import front
 from sweeps.outputs import OUTPUTS
 from sweeps.runs import open_run
+from sweeps.screening import screening
 from sweeps.study_file import read_study
 from tests.explorer.detailed import plain_ladder
 from tests.explorer.spoken import one_line, strict
@@ -165,6 +166,19 @@ def test_drivers_are_those_of_the_pages(said, run_folder, output):
     code, out, _ = said("drivers", run_folder, "--output", output)
     assert code == 0
     assert found.sentence in out
+    assert found.verdict in out
+
+
+def test_drivers_of_a_screening_are_its_effects(said, tmp_path):
+    folder = tmp_path / "run"
+    words = ("sweep", "orchard-truck", "--samples", 16, "--method", "screening", "--into", folder)
+    assert said(*words)[0] == 0
+    code, out, err = said("drivers", folder, "--json")
+    assert (code, err) == (0, "")
+    found = screening(open_run(folder))
+    assert [row["effect"] for row in strict(out)["effects"]] == list(found.table["effect"])
+    code, out, _ = said("drivers", folder)
+    assert code == 0
     assert found.verdict in out
 
 

@@ -11,7 +11,7 @@ import pytest
 from model.errors import InputError
 from sweeps.candidate import detail_of, layout_of, row_of
 from sweeps.catalogue import catalogue
-from sweeps.evaluate import OK
+from sweeps.failures import OK
 from sweeps.jobs import carry_out
 from sweeps.runs import Run, RunError, prepare
 from sweeps.study_file import read_study
