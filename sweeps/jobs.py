@@ -49,6 +49,7 @@ def carry_out(
     """Solve the blocks that a run still misses; block by block, until done or told to stop."""
     with locked(run.folder):
         began = time.perf_counter()
+        run.clear_scratch()
         missing = run.missing()
         rows = run.design.rows
         solved = rows - len(missing) * _block_rows(run)

@@ -9,12 +9,10 @@ trusted and never deleted.
 
 from __future__ import annotations
 
-import errno
 import hashlib
 import json
 import os
-from collections.abc import Iterator, Sequence
-from contextlib import contextmanager
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any
@@ -23,21 +21,21 @@ import numpy as np
 import pandas as pd
 from numpy.typing import NDArray
 
-from model.errors import DesignError, InputError
+from model.errors import InputError
+from sweeps.folders import RunError, locked, naming, set_aside
 from sweeps.sampling import Design
 from sweeps.study import Study
 from sweeps.study_file import parse_study
 from sweeps.study_text import write_study
+
+__all__ = ["BLOCK_ROWS", "FORMAT", "Run", "RunError", "digest", "locked", "open_run", "prepare",
+           "set_aside"]  # fmt: skip
 
 FORMAT = 1
 """Version of the folder's contents; runs of another version are not read."""
 
 BLOCK_ROWS = 16384
 """A block holds about so many rows: whole base samples, a power of two of them."""
-
-
-class RunError(DesignError):
-    """A run folder cannot be used; the message names the file and the remedy."""
 
 
 @dataclass(frozen=True)
@@ -99,7 +97,7 @@ class Run:
     def write_block(self, block: int, rows: pd.DataFrame) -> None:
         """Put a solved block on disk, whole or not at all."""
         path = self.path_of(block)
-        with _naming(path):
+        with naming(path):
             scratch = path.with_name(f"{path.name}.part{os.getpid()}")
             rows.to_parquet(scratch, index=False)
             os.replace(scratch, path)
@@ -142,6 +140,12 @@ class Run:
             set_aside(path)
         return bool(good)
 
+    def clear_scratch(self) -> None:
+        """Take away what killed processes had not finished writing; only while locked."""
+        for scratch in (*self.folder.glob("*.part*"), *self.folder.glob("blocks/*.part*")):
+            with naming(scratch):
+                scratch.unlink(missing_ok=True)
+
     def note(self, **facts: Any) -> None:
         """Write facts (counts, timings) beside what was asked into ``run.json``."""
         _write_json(self.folder / "run.json", {**_read_json(self.folder / "run.json"), **facts})
@@ -169,7 +173,7 @@ def open_run(folder: str | Path) -> Run:
             f"{facts_path}: written by another version (format {facts.get('format')!r}, "
             f"this one reads {FORMAT}); run the sweep into a new folder"
         )
-    with _naming(study_path):
+    with naming(study_path):
         study = parse_study(study_path.read_text(encoding="utf-8"))
     run = Run(folder, study, bool(facts["second_order"]))
     if facts.get("digest") != digest(study, run.second_order):
@@ -205,7 +209,7 @@ def prepare(study: Study, folder: str | Path, second_order: bool = True) -> Run:
         return run
     if folder.exists() and any(folder.iterdir()):
         raise RunError(f"{folder}: holds other files; choose a new or empty folder")
-    with _naming(folder):
+    with naming(folder):
         (folder / "blocks").mkdir(parents=True, exist_ok=True)
     return _write_head(Run(folder, study, second_order), None)
 
@@ -214,7 +218,7 @@ def _write_head(run: Run, keep: int | None) -> Run:
     """Write study and run file; ``keep`` is the block size that solved blocks already have."""
     if keep is not None and run.samples_per_block != keep:
         raise RunError(f"{run.folder}: too few samples to extend; sweep into a new folder")
-    with _naming(run.folder):
+    with naming(run.folder):
         _write_text(run.folder / "study.toml", write_study(run.study))
         facts = {
             "format": FORMAT,
@@ -227,68 +231,6 @@ def _write_head(run: Run, keep: int | None) -> Run:
         }
         _write_json(run.folder / "run.json", facts)
     return run
-
-
-@contextmanager
-def locked(folder: Path) -> Iterator[None]:
-    """Hold a run folder for this process; a second one is told who has it."""
-    path = folder / "in-use"
-    mine = str(os.getpid())
-    with _naming(path):
-        while True:
-            try:
-                handle = os.open(path, os.O_CREAT | os.O_EXCL | os.O_WRONLY)
-                break
-            except FileExistsError:
-                holder = path.read_text(encoding="utf-8").strip()
-                if holder and _alive(holder):
-                    raise RunError(
-                        f"{folder}: in use by process {holder}; wait for it or stop it"
-                    ) from None
-                set_aside(path)
-        os.write(handle, mine.encode())
-        os.close(handle)
-    try:
-        yield
-    finally:
-        path.unlink(missing_ok=True)
-
-
-def _alive(pid: str) -> bool:
-    if not pid.isdigit():
-        return False
-    try:
-        os.kill(int(pid), 0)
-    except ProcessLookupError:
-        return False
-    except (PermissionError, OSError):
-        return True
-    return True
-
-
-def set_aside(path: Path) -> Path:
-    """Give a file that cannot be trusted another name; says which."""
-    for number in range(1, 1000):
-        other = path.with_name(f"{path.name}.set-aside-{number}")
-        if not other.exists():
-            with _naming(path):
-                os.replace(path, other)
-            return other
-    raise RunError(f"{path}: too many set-aside files; look at them and clear them away")
-
-
-@contextmanager
-def _naming(path: Path) -> Iterator[None]:
-    """Say which file an operating-system fault is about, and what would do."""
-    try:
-        yield
-    except PermissionError as fault:
-        raise RunError(f"{path}: may not be written; choose a folder of your own") from fault
-    except OSError as fault:
-        if fault.errno == errno.EROFS:
-            raise RunError(f"{path}: may not be written; choose a folder of your own") from fault
-        remedy = "free some space and resume" if fault.errno == errno.ENOSPC else "see the folder"
-        raise RunError(f"{path}: {fault.strerror or fault}; {remedy}") from fault
 
 
 def _write_text(path: Path, text: str) -> None:
