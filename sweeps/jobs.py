@@ -5,13 +5,27 @@ from __future__ import annotations
 import threading
 import time
 import traceback
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
+from concurrent.futures import (
+    FIRST_COMPLETED,
+    BrokenExecutor,
+    CancelledError,
+    Executor,
+    Future,
+    wait,
+)
 from dataclasses import dataclass, field
 from pathlib import Path
+from typing import Any, TypeVar
+
+import pandas as pd
 
 from model.errors import DesignError
 from sweeps.evaluate import OK, evaluate
-from sweeps.runs import Run, locked
+from sweeps.runs import Run, RunError, locked
+from sweeps.study import Study
+
+T = TypeVar("T")
 
 
 @dataclass(frozen=True)
@@ -40,13 +54,60 @@ class Progress:
 WAITING, RUNNING, DONE, CANCELLED, FAILED = "waiting", "running", "done", "cancelled", "failed"
 
 
+class Here(Executor):
+    """Does each block in the calling thread, which shares it among the solver's own threads."""
+
+    def submit(self, fn: Callable[..., T], /, *args: Any, **kwargs: Any) -> Future[T]:
+        """Do the work now."""
+        done: Future[T] = Future()
+        try:
+            done.set_result(fn(*args, **kwargs))
+        except Exception as fault:
+            done.set_exception(fault)
+        return done
+
+
+@dataclass(frozen=True, eq=False)
+class Solved:
+    """Rows of a block, and the seconds that drawing and solving them took."""
+
+    rows: pd.DataFrame
+    drawing: float
+    solving: float
+
+
+def solve_block(
+    study: Study, second_order: bool, first: int, samples: int, threads: int | None
+) -> Solved:
+    """Solve the frames of some base samples; the same bits wherever it is done."""
+    begin = time.perf_counter()
+    design = study.design(second_order)
+    unit = design.unit(first, samples)
+    middle = time.perf_counter()
+    rows = evaluate(study, unit, first * design.rows_per_sample, threads)
+    return Solved(rows, middle - begin, time.perf_counter() - middle)
+
+
 def carry_out(
     run: Run,
     tell: Callable[[Progress], None] = lambda _: None,
     stop: Callable[[], bool] = lambda: False,
     threads: int | None = None,
+    executor: Executor | None = None,
+    ahead: int = 8,
 ) -> Progress:
-    """Solve the blocks that a run still misses; block by block, until done or told to stop."""
+    """Solve the blocks that a run still misses; block by block, until done or told to stop.
+
+    threads : of the solver in each block. executor : who solves the blocks: the calling thread
+        when not given, or any ``concurrent.futures`` executor, such as a ``ProcessPoolExecutor``
+        or what ``dask.distributed.Client.get_executor()`` gives. Its workers read and write no
+        files. ahead : so many blocks are given to it at a time.
+
+    Raises
+    ------
+    RunError
+        The folder is in use or may not be written, or a worker ended; all blocks written stay.
+    """
     with locked(run.folder):
         began = time.perf_counter()
         run.clear_scratch()
@@ -57,21 +118,18 @@ def carry_out(
         drawing = solving = writing = 0.0
         state = DONE
         tell(Progress(rows, solved, failed, 0.0, 0.0, RUNNING))
-        for block in missing:
-            if stop():
+        for block, found in _results(run, missing, stop, threads, executor or Here(),
+                                     ahead if executor else 1):  # fmt: skip
+            if found is None:
                 state = CANCELLED
                 break
-            begin = time.perf_counter()
-            unit = run.unit_of(block)
-            start = time.perf_counter()
-            table = evaluate(run.study, unit, run.rows_of(block).start, threads)
             middle = time.perf_counter()
-            run.write_block(block, table)
-            drawing += start - begin
-            solving += middle - start
+            run.write_block(block, found.rows)
+            drawing += found.drawing
+            solving += found.solving
             writing += time.perf_counter() - middle
-            failed += int((table["status"] != OK).sum())
-            solved += len(table)
+            failed += int((found.rows["status"] != OK).sum())
+            solved += len(found.rows)
             seconds = time.perf_counter() - began
             tell(Progress(rows, solved, failed, seconds, (solved - before) / seconds, RUNNING))
         seconds = time.perf_counter() - began
@@ -87,6 +145,41 @@ def carry_out(
         last = Progress(rows, solved, failed, seconds, rate, state)
         tell(last)
         return last
+
+
+def _results(
+    run: Run,
+    missing: list[int],
+    stop: Callable[[], bool],
+    threads: int | None,
+    executor: Executor,
+    ahead: int,
+) -> Iterator[tuple[int, Solved | None]]:
+    """Blocks as they get done; None when told to stop."""
+    count = run.samples_per_block
+    waiting = list(reversed(missing))
+    under_way: dict[Future[Solved], int] = {}
+    try:
+        while waiting or under_way:
+            if stop():
+                yield -1, None
+                return
+            while waiting and len(under_way) < ahead:
+                block = waiting.pop()
+                job = executor.submit(
+                    solve_block, run.study, run.second_order, block * count, count, threads
+                )
+                under_way[job] = block
+            for job in wait(under_way, return_when=FIRST_COMPLETED).done:
+                yield under_way.pop(job), job.result()
+    except (BrokenExecutor, CancelledError) as fault:
+        raise RunError(
+            f"{run.folder}: a worker ended before its block was solved; all that is solved stays, "
+            "resume the sweep"
+        ) from fault
+    finally:
+        for job in under_way:
+            job.cancel()
 
 
 def _block_rows(run: Run) -> int:

@@ -1,0 +1,90 @@
+"""Blocks solved by other threads, processes or a cluster are the same bits; nothing gets lost."""
+
+import os
+import signal
+from concurrent.futures import Executor, ProcessPoolExecutor, ThreadPoolExecutor
+from dataclasses import replace
+from multiprocessing import get_context
+from pathlib import Path
+
+import pandas as pd
+import pytest
+
+from sweeps import jobs, runs
+from sweeps.study import Study
+
+
+@pytest.fixture(autouse=True)
+def small_blocks(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(runs, "BLOCK_ROWS", 160)
+
+
+def kill_oneself(_: object) -> None:
+    os.kill(os.getpid(), signal.SIGKILL)
+
+
+def same(run: runs.Run, folder: Path) -> None:
+    whole = runs.prepare(run.study, folder)
+    jobs.carry_out(whole)
+    pd.testing.assert_frame_equal(run.table(), whole.table(), check_exact=True)
+    for one, other in zip(run.blocks, whole.blocks, strict=True):
+        assert run.path_of(one).read_bytes() == whole.path_of(other).read_bytes()
+
+
+@pytest.mark.parametrize("kind", ["threads", "processes"])
+def test_the_result_is_the_local_one_bit_for_bit(
+    kind: str, small_study: Study, tmp_path: Path
+) -> None:
+    run = runs.prepare(replace(small_study, samples=128), tmp_path / "a")
+    executor: Executor = (
+        ThreadPoolExecutor(2)
+        if kind == "threads"
+        else ProcessPoolExecutor(2, mp_context=get_context("spawn"))
+    )
+    seen = []
+    with executor:
+        ended = jobs.carry_out(run, lambda p: seen.append(p.solved), threads=1, executor=executor)
+    assert ended.state == jobs.DONE
+    assert seen == sorted(seen)
+    assert run.facts()["seconds"]["building_and_solving"] > 0
+    same(run, tmp_path / "b")
+
+
+def test_a_worker_that_is_killed_is_named_and_loses_nothing(
+    small_study: Study, tmp_path: Path
+) -> None:
+    run = runs.prepare(replace(small_study, samples=64), tmp_path / "a")
+    with ProcessPoolExecutor(1, mp_context=get_context("spawn")) as pool:
+
+        def tell(progress: jobs.Progress) -> None:
+            if progress.solved:
+                pool.submit(kill_oneself, None)
+
+        with pytest.raises(runs.RunError, match=r"a worker ended .* resume"):
+            jobs.carry_out(run, tell, threads=1, executor=pool, ahead=1)
+    assert 0 < run.rows_solved < run.design.rows
+    assert not (run.folder / "in-use").exists()
+    assert jobs.carry_out(run).state == jobs.DONE
+    same(run, tmp_path / "b")
+
+
+def test_stopping_keeps_what_is_written(small_study: Study, tmp_path: Path) -> None:
+    run = runs.prepare(replace(small_study, samples=128), tmp_path / "a")
+    calls = iter([False, False, True])
+    with ThreadPoolExecutor(2) as pool:
+        ended = jobs.carry_out(run, stop=lambda: next(calls), threads=1, executor=pool, ahead=2)
+    assert ended.state == jobs.CANCELLED
+    assert 0 < run.rows_solved < run.design.rows
+    jobs.carry_out(run)
+    same(run, tmp_path / "b")
+
+
+def test_a_cluster_of_two_processes_gives_the_same_bits(small_study: Study, tmp_path: Path) -> None:
+    distributed = pytest.importorskip("distributed")
+    run = runs.prepare(replace(small_study, samples=128), tmp_path / "a")
+    with (
+        distributed.LocalCluster(n_workers=2, threads_per_worker=1, dashboard_address=None) as c,
+        distributed.Client(c) as client,
+    ):
+        jobs.carry_out(run, threads=1, executor=client.get_executor())
+    same(run, tmp_path / "b")
