@@ -59,6 +59,7 @@ class Front:
 
     rows : the table's rows, lightest first. knee : frame number of the knee.
     counted : frames that meet the limits; considered : all frames that were solved.
+    z : the third column, when there is one.
     """
 
     rows: pd.DataFrame
@@ -67,6 +68,12 @@ class Front:
     knee: int | None
     counted: int
     considered: int
+    z: str | None = None
+
+    @property
+    def columns(self) -> tuple[str, ...]:
+        """The two or three columns."""
+        return (self.x, self.y) if self.z is None else (self.x, self.y, self.z)
 
 
 def front(
@@ -76,8 +83,9 @@ def front(
     min_twist: float | None = None,
     max_mass: float | None = None,
     limits: Mapping[str, tuple[float | None, float | None]] | None = None,
+    z: str | None = None,
 ) -> Front:
-    """The front of two result columns within limits.
+    """The front of two or three columns within limits.
 
     limits : least and greatest value by column, on top of ``min_twist`` [N·m/deg] and
         ``max_mass`` [kg].
@@ -92,7 +100,8 @@ def front(
         bounds["twist_Nm_per_deg"] = (min_twist, None)
     if max_mass is not None:
         bounds["mass_kg"] = (None, max_mass)
-    for column in (x, y, *bounds):
+    columns = (x, y) if z is None else (x, y, z)
+    for column in (*columns, *bounds):
         if column not in table.columns:
             raise InputError("column", repr(column), f"use one of: {', '.join(OUTPUTS)}")
     solved = table[np.isfinite(table["twist_Nm_per_deg"])]
@@ -102,8 +111,8 @@ def front(
         inside &= (values >= least) if least is not None else True
         inside &= (values <= most) if most is not None else True
     kept = solved[inside]
-    rows = kept.iloc[unbeaten(costs(kept, (x, y)))].reset_index(drop=True)
-    return Front(rows, x, y, knee(rows, x, y), len(kept), len(solved))
+    rows = kept.iloc[unbeaten(costs(kept, columns))].reset_index(drop=True)
+    return Front(rows, x, y, knee(rows, *columns), len(kept), len(solved), z)
 
 
 def costs(table: pd.DataFrame, columns: Sequence[str]) -> F64:
@@ -115,15 +124,16 @@ def costs(table: pd.DataFrame, columns: Sequence[str]) -> F64:
     return found
 
 
-def knee(rows: pd.DataFrame, x: str, y: str) -> int | None:
+def knee(rows: pd.DataFrame, x: str, y: str, z: str | None = None) -> int | None:
     """Frame number of the front's knee: farthest from the chord between its ends.
 
-    Both columns scaled to the front's range; the bend angle's cousin of Das, "On characterizing
-    the knee of the Pareto curve" (Structural Optimization 18, 1999). None below three frames.
+    Columns scaled to the front's range; the bend angle's cousin of Das, "On characterizing the
+    knee of the Pareto curve" (Structural Optimization 18, 1999). Of three columns the plane
+    through the ends of the scaled axes stands for the chord. None below three frames.
     """
     if len(rows) < 3:
         return None
-    points = costs(rows, (x, y))
+    points = costs(rows, (x, y) if z is None else (x, y, z))
     span = np.ptp(points, axis=0)
     if (span == 0).any():
         return None

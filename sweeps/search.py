@@ -216,6 +216,7 @@ def sizing_of(study: Study, layout: Layout | None = None) -> Sizing:
 
     layout : the layout whose joints and members stay; the study's own when not given. A stock
     size that varies makes its outside and wall free between the smallest and the largest listed.
+    Tubes linked to another one without a difference stay of its size; others keep their own.
     """
     layout = layout or study.layout
     batch = one(layout)
@@ -225,15 +226,19 @@ def sizing_of(study: Study, layout: Layout | None = None) -> Sizing:
         if parts[0] != "tube" or parts[1] not in batch.skeleton.groups:
             continue
         group = parts[1]
+        follow = [
+            x.path.split(".")[1] for x in study.links if x.same_as == given.path and not x.plus
+        ]
+        groups = (group, *(g for g in follow if g in batch.skeleton.groups))
         if parts[2] == "stock":
             for name in given.options[0].sizes:
                 values = [option.sizes[name] for option in given.options]
                 if min(values) < max(values):
-                    sizes.append(Size((group,), name, min(values), max(values)))
+                    sizes.append(Size(groups, name, min(values), max(values)))
         elif parts[2] in layout.tubes[group].sizes and given.low is not None:
             assert given.high is not None
             scale = UNITS[given.unit]
-            sizes.append(Size((group,), parts[2], given.low * scale, given.high * scale))
+            sizes.append(Size(groups, parts[2], given.low * scale, given.high * scale))
     tubes = {group: layout.tubes[group] for group in batch.skeleton.groups}
     return Sizing(batch, tubes, sizes)
 
