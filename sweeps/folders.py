@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import errno
 import os
+import sys
 from collections.abc import Iterator
 from contextlib import contextmanager
 from pathlib import Path
@@ -56,6 +57,13 @@ def _take_stale(path: Path, holder: str) -> None:
 def _alive(pid: str) -> bool:
     if not pid.isdigit():
         return False
+    if sys.platform == "win32":  # there a signal of 0 would not only ask
+        import ctypes
+
+        handle = ctypes.windll.kernel32.OpenProcess(0x1000, False, int(pid))
+        if handle:
+            ctypes.windll.kernel32.CloseHandle(handle)
+        return bool(handle)
     try:
         os.kill(int(pid), 0)
     except ProcessLookupError:

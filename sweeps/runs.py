@@ -43,11 +43,13 @@ class Run:
     """A run on disk.
 
     folder : where it lies. study : what is asked; its samples are what the run aims for.
+    samples_per_block : base samples in one block, settled when the run is made.
     """
 
     folder: Path
     study: Study
     second_order: bool
+    samples_per_block: int
 
     @property
     def name(self) -> str:
@@ -58,12 +60,6 @@ class Run:
     def design(self) -> Design:
         """The rows that the run is made of."""
         return self.study.design(self.second_order)
-
-    @property
-    def samples_per_block(self) -> int:
-        """Base samples in one block."""
-        most = max(1, BLOCK_ROWS // self.design.rows_per_sample)
-        return int(min(2 ** int(np.log2(most)), self.study.samples))
 
     @property
     def blocks(self) -> range:
@@ -174,8 +170,14 @@ def open_run(folder: str | Path) -> Run:
             f"this one reads {FORMAT}); run the sweep into a new folder"
         )
     with naming(study_path):
-        study = parse_study(study_path.read_text(encoding="utf-8"))
-    run = Run(folder, study, bool(facts["second_order"]))
+        try:
+            study = parse_study(study_path.read_text(encoding="utf-8"))
+        except UnicodeDecodeError:
+            raise RunError(f"{study_path}: is no text; restore it") from None
+    second_order, per_block = facts.get("second_order"), facts.get("samples_per_block")
+    if not isinstance(second_order, bool) or not isinstance(per_block, int) or per_block < 1:
+        raise RunError(f"{facts_path}: incomplete; run the sweep into a new folder")
+    run = Run(folder, study, second_order, per_block)
     if facts.get("digest") != digest(study, run.second_order):
         raise RunError(
             f"{study_path}: changed since the run was made; restore it, or run the changed study "
@@ -202,22 +204,24 @@ def prepare(study: Study, folder: str | Path, second_order: bool = True) -> Run:
                 "study.toml in it"
             )
         if study.samples > run.study.samples:
-            if study.samples % run.samples_per_block:
-                raise RunError(f"{folder}: use a multiple of {run.samples_per_block} samples")
             with locked(folder):
-                return _write_head(replace(run, study=study), run.samples_per_block)
+                return _write_head(replace(run, study=study))
         return run
     if folder.exists() and any(folder.iterdir()):
         raise RunError(f"{folder}: holds other files; choose a new or empty folder")
     with naming(folder):
         (folder / "blocks").mkdir(parents=True, exist_ok=True)
-    return _write_head(Run(folder, study, second_order), None)
+    return _write_head(Run(folder, study, second_order, _per_block(study, second_order)))
 
 
-def _write_head(run: Run, keep: int | None) -> Run:
-    """Write study and run file; ``keep`` is the block size that solved blocks already have."""
-    if keep is not None and run.samples_per_block != keep:
-        raise RunError(f"{run.folder}: too few samples to extend; sweep into a new folder")
+def _per_block(study: Study, second_order: bool) -> int:
+    """Base samples that make a block of the usual size, or all of a small run."""
+    most = max(1, BLOCK_ROWS // study.design(second_order).rows_per_sample)
+    return int(min(2 ** int(np.log2(most)), study.samples))
+
+
+def _write_head(run: Run) -> Run:
+    """Write study and run file."""
     with naming(run.folder):
         _write_text(run.folder / "study.toml", write_study(run.study))
         facts = {

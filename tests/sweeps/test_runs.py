@@ -38,6 +38,17 @@ def test_doubling_keeps_every_solved_row(small_study: Study, tmp_path: Path) -> 
     pd.testing.assert_frame_equal(whole, fresh, check_exact=True)
 
 
+def test_a_run_smaller_than_a_block_can_be_doubled(
+    small_study: Study, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(runs, "BLOCK_ROWS", 16384)
+    half = solved(small_study, tmp_path / "a")
+    whole = solved(replace(small_study, samples=64), tmp_path / "a")
+    pd.testing.assert_frame_equal(whole.iloc[: len(half)], half, check_exact=True)
+    fresh = solved(replace(small_study, samples=64), tmp_path / "b")
+    pd.testing.assert_frame_equal(whole, fresh, check_exact=True)
+
+
 def test_a_cancelled_run_resumes_to_the_same_bits(small_study: Study, tmp_path: Path) -> None:
     run = runs.prepare(small_study, tmp_path / "a")
     calls = iter([False, True])
