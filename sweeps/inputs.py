@@ -153,8 +153,7 @@ def _cut_normal(u: F64, mean: float, sd: float, low: float, high: float) -> F64:
     below, above = ndtr((low - mean) / sd), ndtr((high - mean) / sd)
     values: F64 = np.clip(mean + sd * ndtri(below + u * (above - below)), low, high)
     # in a far tail the distribution function is 1 to rounding: the ends are what was asked for
-    values = np.where(u <= 0.0, low, np.where(u >= 1.0, high, values))
-    return values
+    return np.where(u <= 0.0, low, np.where(u >= 1.0, high, values))
 
 
 def option_label(option: Any) -> Any:

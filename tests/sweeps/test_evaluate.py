@@ -7,6 +7,7 @@ import pandas as pd
 import pytest
 
 from model.results.detail import examine
+from sweeps import evaluate as evaluating
 from sweeps.evaluate import OK, evaluate
 from sweeps.inputs import Input
 from sweeps.sampling import Design
@@ -76,3 +77,18 @@ def test_loose_frames_are_named_and_the_others_keep_their_bits(small_study: Stud
     if len(good):
         alone = evaluate(study, unit[good])
         assert np.array_equal(alone["twist_Nm_per_deg"], table["twist_Nm_per_deg"].iloc[good])
+
+
+def test_equal_frames_are_found_even_where_their_marks_meet(
+    small_study: Study, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    unit = Design(4, 64, seed=2).unit()
+    unit = np.concatenate([unit, unit[::7]])
+    first, again = evaluating._distinct(small_study, unit)
+    monkeypatch.setattr(evaluating, "_MARKS", np.zeros(4, np.uint64))
+    slowly = evaluating._distinct(small_study, unit)
+    assert np.array_equal(first, slowly[0])
+    assert np.array_equal(again, slowly[1])
+    columns = small_study.table(unit)
+    assert len(first) == len(columns.drop_duplicates()) < len(unit)
+    assert columns.iloc[first[again]].reset_index(drop=True).equals(columns)

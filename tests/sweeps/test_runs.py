@@ -2,10 +2,6 @@
 
 import json
 import os
-import signal
-import subprocess
-import sys
-import time
 from dataclasses import replace
 from pathlib import Path
 
@@ -57,33 +53,6 @@ def test_a_cancelled_run_resumes_to_the_same_bits(small_study: Study, tmp_path: 
     assert 0 < progress.solved < progress.rows
     again = solved(small_study, tmp_path / "a")
     pd.testing.assert_frame_equal(again, solved(small_study, tmp_path / "b"), check_exact=True)
-
-
-def test_a_killed_process_loses_nothing(small_study: Study, tmp_path: Path) -> None:
-    folder = tmp_path / "a"
-    study = replace(small_study, samples=64)
-    run = runs.prepare(study, folder)
-    code = (
-        "import sys; from sweeps import jobs, runs; runs.BLOCK_ROWS = 40\n"
-        "jobs.carry_out(runs.open_run(sys.argv[1]), tell=lambda p: print(p.solved, flush=True))"
-    )
-    kills = 0
-    while not run.complete and kills < 4:
-        worker = subprocess.Popen(
-            [sys.executable, "-c", code, str(folder)], stdout=subprocess.PIPE, text=True,
-            cwd=Path(__file__).parents[2],
-        )  # fmt: skip
-        assert worker.stdout is not None
-        for _ in range(3):
-            worker.stdout.readline()
-        time.sleep(0.002 * kills)
-        worker.send_signal(signal.SIGKILL)
-        worker.wait()
-        worker.stdout.close()
-        kills += 1
-    assert kills == 4
-    again = solved(study, folder)
-    pd.testing.assert_frame_equal(again, solved(study, tmp_path / "b"), check_exact=True)
 
 
 def test_a_damaged_block_is_set_aside_and_solved_again(small_study: Study, tmp_path: Path) -> None:
