@@ -13,9 +13,24 @@ from sweeps.inputs import Input
 from sweeps.links import Link
 from sweeps.study import Study
 
+HOW_TO_VARY = """\
+# how inputs vary (lengths in the unit of the path):
+#   { from = 1.2, to = 3.0 }                                    all values alike
+#   { from = 1.2, to = 3.0, shape = "triangular", peak = 2.0 }  most at the peak
+#   { from = 1.9, to = 2.1, shape = "normal", mean = 2.0, sd = 0.05 }
+#   { choices = ["open", "single", "cross"] }
+#   { list = "metric-round", from = "20 x 1.5", to = "35 x 2" } or sizes = ["25 x 1.5"]
+#   { same_as = "station.dash.height_high_mm", plus = 40 }      follows another field
+# [judge_together] lists, by a name, inputs that are judged as one.
+# method: sobol (shares of the variation) | screening (which of many inputs matter at all)"""
+"""Comment that a written study file carries above its ``[vary]`` table."""
 
-def write_study(study: Study) -> str:
-    """The study file's text; reading it gives the same study back."""
+
+def write_study(study: Study, comments: bool = True) -> str:
+    """The study file's text; reading it gives the same study back.
+
+    comments : whether what may vary, and how, stands beside.
+    """
     layout = study.layout
     parts = [
         "# A Twistfront study. Lengths in millimetres, masses in kilograms, positions of stations",
@@ -44,6 +59,7 @@ def write_study(study: Study) -> str:
         *(_tube(group, tube) for group, tube in layout.tubes.items()),
         *(_mass(m) for m in layout.masses),
         _table("[sweep]", {"samples": study.samples, "seed": study.seed, "method": study.method}),
+        *([HOW_TO_VARY] if comments else []),
         "[vary]",
         *(f"{_text(i.path)} = {_range(i)}" for i in study.inputs),
         *(f"{_text(link.path)} = {_link(link)}" for link in study.links),

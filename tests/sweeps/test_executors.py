@@ -2,6 +2,7 @@
 
 import os
 import signal
+import sys
 from concurrent.futures import Executor, ProcessPoolExecutor, ThreadPoolExecutor
 from dataclasses import replace
 from multiprocessing import get_context
@@ -10,7 +11,9 @@ from pathlib import Path
 import pandas as pd
 import pytest
 
+from model.errors import InputError
 from sweeps import jobs, runs
+from sweeps.cluster import cluster
 from sweeps.study import Study
 
 
@@ -79,12 +82,39 @@ def test_stopping_keeps_what_is_written(small_study: Study, tmp_path: Path) -> N
     same(run, tmp_path / "b")
 
 
-def test_a_cluster_of_two_processes_gives_the_same_bits(small_study: Study, tmp_path: Path) -> None:
+def test_a_cluster_of_two_processes_gives_the_same_bits_though_one_is_killed(
+    small_study: Study, tmp_path: Path
+) -> None:
     distributed = pytest.importorskip("distributed")
-    run = runs.prepare(replace(small_study, samples=128), tmp_path / "a")
-    with (
-        distributed.LocalCluster(n_workers=2, threads_per_worker=1, dashboard_address=None) as c,
-        distributed.Client(c) as client,
-    ):
-        jobs.carry_out(run, threads=1, executor=client.get_executor())
+    run = runs.prepare(replace(small_study, samples=512), tmp_path / "a")
+    with distributed.LocalCluster(
+        n_workers=2, threads_per_worker=1, dashboard_address=None
+    ) as local:
+        workers = [worker.pid for worker in local.workers.values()]
+        assert len(set(workers)) == 2
+        killed: list[int] = []
+
+        def tell(progress: jobs.Progress) -> None:
+            if progress.share > 0.2 and not killed:
+                killed.append(workers[0])
+                os.kill(workers[0], signal.SIGKILL)
+
+        with cluster(local.scheduler_address) as executor:
+            ended = jobs.carry_out(run, tell, threads=1, executor=executor)
+    assert killed
+    assert ended.state == jobs.DONE
     same(run, tmp_path / "b")
+
+
+def test_no_scheduler_is_said_in_words(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setitem(sys.modules, "distributed", None)
+    with pytest.raises(InputError, match="install the library"), cluster("tcp://127.0.0.1:1"):
+        pass
+
+
+def test_a_scheduler_that_is_not_there_is_named(monkeypatch: pytest.MonkeyPatch) -> None:
+    pytest.importorskip("distributed")
+    monkeypatch.setattr("sweeps.cluster.PATIENCE", 0.5)
+    for address in ("tcp://127.0.0.1:1", "nonsense"):
+        with pytest.raises(InputError, match="one that runs"), cluster(address):
+            pass

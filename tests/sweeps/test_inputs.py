@@ -15,7 +15,7 @@ from sweeps.links import Group, Link
 from sweeps.sampling import Design
 from sweeps.study import Study
 from sweeps.study_file import parse_study, read_study
-from sweeps.study_text import write_study
+from sweeps.study_text import HOW_TO_VARY, write_study
 
 PATH = "tube.lower rails.wall_mm"
 
@@ -68,6 +68,19 @@ def test_shapes_links_and_groups_come_back_as_written(linked: Study) -> None:
     assert parse_study(write_study(linked)) == linked
     assert linked.inputs[0].words == "1800 to 2100 mm, most likely 1900"
     assert "standard deviation 0.08" in linked.inputs[1].words
+
+
+def test_the_file_says_what_may_be_written_and_the_comment_is_true(linked: Study) -> None:
+    text = write_study(linked)
+    assert HOW_TO_VARY in text
+    forms = [line.split("}")[0][1:] + "}" for line in HOW_TO_VARY.splitlines() if "{ " in line]
+    paths = [PATH] * 3 + ["span.cab.floor", "tube.lower rails.stock", "wheelbase_mm"]
+    assert len(forms) == len(paths)
+    for path, form in zip(paths, forms, strict=True):
+        form = form.replace("station.dash.height_high_mm", "track_front_mm")
+        study = parse_study(HEAD + f'"{path}" = {form.strip()}')
+        assert len(study.inputs) + len(study.links) == 1
+    assert parse_study(write_study(linked, comments=False)) == linked
 
 
 def test_a_linked_field_follows_and_takes_no_dimension(linked: Study) -> None:
