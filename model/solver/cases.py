@@ -20,7 +20,6 @@ from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
-
 from numpy.typing import NDArray
 
 from model.frame.batch import Batch
