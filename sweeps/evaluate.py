@@ -98,8 +98,8 @@ def _distinct(study: Study, unit: F64) -> tuple[NDArray[np.int64], NDArray[np.in
     for k, given in enumerate(study.inputs):
         keys[:, k] = given.picked(unit[:, k]) if given.is_choice else unit[:, k]
     bits = np.ascontiguousarray(keys).view(np.uint64)
-    marks = (bits * _MARKS[: bits.shape[1]]).sum(axis=1)
-    marks ^= marks >> np.uint64(29)
+    # few of the low bits of a number vary (none of a choice's): the high ones are folded in
+    marks = ((bits ^ (bits >> np.uint64(31))) * _MARKS[: bits.shape[1]]).sum(axis=1)
     _, first, again = np.unique(marks, return_index=True, return_inverse=True)
     if not np.array_equal(bits[first[again]], bits):  # two rows of one mark: one by one, then
         _, first, again = np.unique(bits, axis=0, return_index=True, return_inverse=True)

@@ -1,6 +1,7 @@
 """Rows of results: equal whatever the blocks and threads, never silently zero."""
 
 from dataclasses import replace
+from typing import Any
 
 import numpy as np
 import pandas as pd
@@ -84,9 +85,19 @@ def test_equal_frames_are_found_even_where_their_marks_meet(
 ) -> None:
     unit = Design(4, 64, seed=2).unit()
     unit = np.concatenate([unit, unit[::7]])
+    rows_one_by_one = []
+    unique = np.unique
+
+    def counting(*given: Any, **more: Any) -> Any:
+        rows_one_by_one.append("axis" in more)
+        return unique(*given, **more)
+
+    monkeypatch.setattr(np, "unique", counting)
     first, again = evaluating._distinct(small_study, unit)
+    assert not any(rows_one_by_one)
     monkeypatch.setattr(evaluating, "_MARKS", np.zeros(4, np.uint64))
     slowly = evaluating._distinct(small_study, unit)
+    assert any(rows_one_by_one)
     assert np.array_equal(first, slowly[0])
     assert np.array_equal(again, slowly[1])
     columns = small_study.table(unit)
