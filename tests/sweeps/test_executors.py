@@ -7,6 +7,7 @@ from concurrent.futures import Executor, ProcessPoolExecutor, ThreadPoolExecutor
 from dataclasses import replace
 from multiprocessing import get_context
 from pathlib import Path
+from types import ModuleType
 
 import pandas as pd
 import pytest
@@ -20,6 +21,8 @@ from sweeps.study import Study
 @pytest.fixture(autouse=True)
 def small_blocks(monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(runs, "BLOCK_ROWS", 160)
+    # the page tests leave a page behind as the main module, which a new process would run
+    monkeypatch.setitem(sys.modules, "__main__", ModuleType("__main__"))
 
 
 def kill_oneself(_: object) -> None:

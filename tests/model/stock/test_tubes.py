@@ -126,7 +126,8 @@ def test_rounding_up_never_makes_a_tube_smaller_and_nearest_is_never_the_worse_f
     if "wall" in wanted:
         wanted["wall"] = min(wanted["wall"], *(v / 2 for n, v in wanted.items() if n != "wall"))
     up, _ = next_size(stock, wanted)
-    assert all(up.sizes[n] >= wanted[n] for n in wanted)
+    # 0.8 of 5/8 in is half an inch but for the last bit
+    assert all(up.sizes[n] >= wanted[n] * (1 - 1e-12) for n in wanted)
     assert up.area <= one.area  # the one it was drawn from would do, too
     assert up.area >= float(section_values(stock.shape, wanted).A) * (1 - 1e-12)
     near, _ = next_size(stock, wanted, "nearest")
