@@ -14,7 +14,7 @@ HERE = Path(__file__).parent
 
 def main() -> None:
     """Show the page that the person is on."""
-    state.follow_address()
+    state.keep_address()
     page = st.navigation(
         [
             st.Page(f"steps/{name}.py", title=title, url_path=name, default=name == "frame")

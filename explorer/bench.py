@@ -54,7 +54,6 @@ class Bench:
     offer: tuple[int, tuple[Input, ...]] = (-1, ())
     past: list[Study] = field(default_factory=list)
     revision: int = 0
-    address: dict[str, str] = field(default_factory=dict)
     text: str = ""
 
     @property

@@ -133,12 +133,15 @@ def sidebar() -> None:
 def _vehicle() -> None:
     here = state.bench()
     titles = vehicle_titles()
-    if here.source not in titles:
-        titles = {here.source: here.study.name} | titles
-    key = f"vehicle {here.revision} {here.source}"
+    if here.source != here.vehicle:
+        titles = {here.source: f"{here.study.name}, edited"} | {
+            source: title for source, title in titles.items() if source != here.source
+        }
+    # a list keeps its choice by the words shown: with other words it must be another list
+    key = f"vehicle {here.revision} {here.source} {sorted(titles.items())}"
 
     def choose() -> None:
-        with telling():
+        if st.session_state[key] in titles:
             state.choose(st.session_state[key])
 
     st.selectbox(
@@ -155,13 +158,16 @@ def _vehicle() -> None:
 def vehicle_titles() -> dict[str, str]:
     """What can be put on the bench: starting vehicles, then drafts, by what a person reads."""
     found = {source: _name_of(text) for source, text in catalogue().vehicles.items()}
+    now = datetime.datetime.now()
     for draft in drafts.drafts():
         when = datetime.datetime.fromtimestamp(draft.changed)
         try:
             name = _name_of(draft.text)
         except InputError:
             continue
-        found[draft.name] = f"{name}, {words.moment(when, datetime.datetime.now())}"
+        title = f"{name}, {words.moment(when, now)}"
+        same = sum(other.startswith(title) for other in found.values())
+        found[draft.name] = f"{title} ({same + 1})" if same else title
     return found
 
 

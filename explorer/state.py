@@ -42,15 +42,13 @@ def bench() -> Bench:
     return found
 
 
-def follow_address() -> Bench:
-    """Call once at the start of every page: what is new in the address comes onto the bench."""
-    known = _KEY in st.session_state
-    here = bench()
-    said = {name: text for name, text in dict(st.query_params).items() if name in address.NAMES}
-    if known and said and said != here.address:  # the person went back, or changed it by hand
-        _take(here, said)
-    _write_address(here)
-    return here
+def keep_address() -> None:
+    """Call once at the start of every page: the address says again what is on the bench.
+
+    The bench wins over the address once a session has begun: a press that was still on its way
+    while the address changed carries the old one, and must not bring an old study back.
+    """
+    _write_address(bench())
 
 
 def parameters() -> dict[str, str]:
@@ -249,33 +247,24 @@ def set_target(target: float | None) -> None:
 
 
 def _write_address(here: Bench) -> None:
-    here.address = address.of(here)
-    shown = dict(st.query_params)
-    if {name: text for name, text in shown.items() if name in address.NAMES} != here.address:
+    shown, said = dict(st.query_params), address.of(here)
+    if {name: text for name, text in shown.items() if name in address.NAMES} != said:
         others = {name: text for name, text in shown.items() if name not in address.NAMES}
-        st.query_params.from_dict(others | here.address)
+        st.query_params.from_dict(others | said)
 
 
 def _from_address(said: Mapping[str, str]) -> Bench:
     text = catalogue().vehicles[FIRST_VEHICLE]
     here = Bench(FIRST_VEHICLE, parse_study(text), text=text)
-    _take(here, said)
-    return here
-
-
-def _take(here: Bench, said: Mapping[str, str]) -> None:
-    """Bring onto the bench what an address says."""
     source = said.get("study", FIRST_VEHICLE)
     if source != here.source:
         here.source, here.study, here.text = _read(here, source)
-        here.waiting, here.fault, here.past, here.held = {}, None, [], {}
     name = said.get("run", "")
     there = address.is_run_name(name) and run_folder(name).is_dir()
     if name and not there:
         here.notice = "The sweep in this address is not on this computer (any more)."
     address.take(here, said, name if there else None)
-    here.braced, here.snapped = {}, False
-    here.revision += 1
+    return here
 
 
 def _read(here: Bench, source: str) -> tuple[str, Study, str]:
