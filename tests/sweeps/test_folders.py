@@ -30,8 +30,9 @@ WORKERS = """
             tell = lambda progress: os.write(told, b".")
             jobs.carry_out(runs.open_run(sys.argv[1]), tell, threads=1)
             os._exit(0)
-        os.read(heard, 1)  # it has the folder
-        time.sleep(chance.uniform(0.0, 0.12))
+        for _ in range(chance.randint(1, 6)):
+            os.read(heard, 1)  # it has the folder, then a block more each time
+        time.sleep(chance.uniform(0.0, 0.01))
         os.kill(worker, signal.SIGKILL)
         _, ended = os.waitpid(worker, 0)
         print(os.WIFSIGNALED(ended), run.rows_solved, flush=True)
