@@ -8,13 +8,18 @@ several runs, since other programs only ever make a run slower; the median stand
 from __future__ import annotations
 
 import os
+import sys
+
+from explorer.environment import enter
+
+if __name__ == "__main__":
+    enter("test", "tests.benchmarks", sys.argv[1:])  # before anything that is not in Python itself
 
 os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")  # before numpy: rates for each core
 
 import argparse
 import platform
 import resource
-import sys
 import time
 from collections.abc import Callable
 from dataclasses import replace
