@@ -24,7 +24,6 @@ from sweeps.drivers import Drivers, drivers
 from sweeps.evaluate import OK, evaluate
 from sweeps.front import Front, front
 from sweeps.runs import Run, digest, open_run
-from sweeps.sampling import Design
 from sweeps.study import Study, with_value
 from sweeps.study_file import read_study
 
@@ -151,7 +150,7 @@ def trial(study: Study) -> Trial:
 def _trial(key: str, _study: Study) -> Trial:
     import time
 
-    unit = Design(len(_study.inputs), 16, True, _study.seed).unit()
+    unit = _study.design().unit(0, min(16, _study.samples))
     evaluate(_study, unit[:8])  # prepares what is prepared once
     began = time.perf_counter()
     rows = evaluate(_study, unit)

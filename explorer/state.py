@@ -163,7 +163,14 @@ def put_inputs(changed: Mapping[str, Input], held: Collection[str]) -> None:
     order = [given.path for given in offered()]
     every = {**here.held, **{g.path: g for g in here.study.inputs}, **changed}
     aside = {p for p in here.held if p not in changed} | {*held}
-    put(replace(here.study, inputs=tuple(every[p] for p in order if p not in aside)), anew=False)
+    study = here.study
+    for path in aside:
+        study = study.without_input(path)
+    for path in order:
+        if path not in aside:
+            study = study.with_input(every[path])
+    inputs = tuple(study.input(path) for path in order if path not in aside)
+    put(replace(study, inputs=inputs), anew=False)
     here.held = {path: every[path] for path in order if path in aside}
 
 

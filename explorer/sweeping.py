@@ -13,7 +13,6 @@ from explorer.numbers import count
 from explorer.varying_form import guarded
 from sweeps import jobs
 from sweeps.runs import Run, RunError, digest, prepare
-from sweeps.sampling import Design
 from sweeps.study import Study
 
 SAMPLES = tuple(2**k for k in range(5, 17))
@@ -121,7 +120,7 @@ def open_earlier(name: str) -> None:
 
 def extent(study: Study, trial: results.Trial | None) -> str:
     """How many frames a sweep makes and how long it will take."""
-    rows = Design(len(study.inputs), study.samples, True, study.seed).rows
+    rows = study.design().rows
     text = f"**{count(rows, 'frame')}**"
     if trial is None:
         return text

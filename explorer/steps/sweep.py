@@ -8,7 +8,6 @@ from explorer import furniture, results, state, sweeping, varying_form, words
 from explorer.charts import front_chart, front_in_words
 from sweeps import jobs
 from sweeps.evaluate import OK
-from sweeps.sampling import Design
 
 here = state.bench()
 study, units = here.study, here.shown_units
@@ -16,7 +15,7 @@ with furniture.telling():
     run = results.run_on_bench()
 job = sweeping.active(run)
 same = run is not None and sweeping.same_sweep(run, study)
-rows = Design(len(study.inputs), study.samples, True, study.seed).rows if study.inputs else 0
+rows = study.design().rows if study.inputs else 0
 failed = 0
 if run is not None and job is None and run.rows_solved:
     failed = int((results.table(run)["status"] != OK).sum())

@@ -107,7 +107,10 @@ def test_another_shape_keeps_outside_and_wall():
 
 
 def test_equipment_comes_from_rows_with_empty_cells():
-    rows = [{"name": "battery", "kg": 12, "x_mm": 500, "y_mm": None}, {"name": None, "kg": None}]
+    rows: list[dict[str, object]] = [
+        {"name": "battery", "kg": 12, "x_mm": 500, "y_mm": None},
+        {"name": None, "kg": None},
+    ]
     assert equipment(rows) == (Mass("battery", 12.0, 0.5, 0.0, 0.0), Mass("item 2", 0, 0, 0, 0))
     with pytest.raises(InputError, match=r"mass.battery.kg = -1"):
         equipment([{"name": "battery", "kg": -1}])
