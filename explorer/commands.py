@@ -123,6 +123,8 @@ def _sweep(chosen: argparse.Namespace) -> int:
     with Interrupt() as stop:
         ended = jobs.carry_out(run, lambda p: line.show(p.solved, p.rows), stop)
         line.end()
+    if ended.message:
+        _say(ended.message)
     _answer(chosen, sweep_record(run, ended), lambda: sweep_text(run, ended))
     if ended.state == jobs.CANCELLED:
         _say("Stopped. The same command goes on from here.")

@@ -43,10 +43,9 @@ def row_of(run: Run, frame: int) -> pd.Series[Any]:
     if not 0 <= frame < rows:
         raise InputError("FRAME", str(frame), f"use a frame of the run, 0 to {rows - 1}")
     block = next(b for b in run.blocks if frame < run.rows_of(b).stop)
-    if block in run.missing():
+    if not run.path_of(block).exists():
         raise InputError("FRAME", str(frame), "not solved yet; resume the sweep or take another")
-    table = pd.read_parquet(run.path_of(block))
-    found: pd.Series[Any] = table.iloc[frame - run.rows_of(block).start]
+    found: pd.Series[Any] = run.read_block(block).iloc[frame - run.rows_of(block).start]
     return found
 
 

@@ -111,7 +111,7 @@ def carry_out(
     with locked(run.folder):
         began = time.perf_counter()
         run.clear_scratch()
-        missing = run.missing()
+        missing, aside = run.inspect()
         rows = run.design.rows
         solved = rows - len(missing) * _block_rows(run)
         before, failed = solved, 0
@@ -142,7 +142,7 @@ def carry_out(
             )
         else:
             rate = 0.0
-        last = Progress(rows, solved, failed, seconds, rate, state)
+        last = Progress(rows, solved, failed, seconds, rate, state, "; ".join(aside))
         tell(last)
         return last
 

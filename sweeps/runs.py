@@ -2,9 +2,9 @@
 
 ``study.toml`` is the complete input, ``run.json`` says what was asked and solved, and
 ``blocks/00000.parquet`` and on hold the rows. A block is written whole to a temporary name and
-renamed, so it is either there or not. Resuming solves the blocks that are missing; doubling the
-samples keeps every block. A file that does not belong is set aside under another name, never
-trusted and never deleted.
+renamed, so it is either there or not; it says which run it is of and is sealed. Resuming solves
+the blocks that are missing; doubling the samples keeps every block. A file that does not belong
+or is damaged is set aside under another name, never trusted and never deleted.
 """
 
 from __future__ import annotations
@@ -14,6 +14,7 @@ import json
 import os
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from functools import cached_property
 from pathlib import Path
 from typing import Any
 
@@ -22,6 +23,7 @@ import pandas as pd
 from numpy.typing import NDArray
 
 from model.errors import InputError
+from sweeps.blocks import BlockFault, read_block, write_block
 from sweeps.folders import RunError, locked, naming, set_aside
 from sweeps.sampling import Design
 from sweeps.study import Study
@@ -31,7 +33,7 @@ from sweeps.study_text import write_study
 __all__ = ["BLOCK_ROWS", "FORMAT", "Run", "RunError", "digest", "locked", "open_run", "prepare",
            "set_aside"]  # fmt: skip
 
-FORMAT = 1
+FORMAT = 2
 """Version of the folder's contents; runs of another version are not read."""
 
 BLOCK_ROWS = 16384
@@ -76,8 +78,23 @@ class Run:
         return self.folder / "blocks" / f"{block:05d}.parquet"
 
     def missing(self) -> list[int]:
-        """Blocks that are not solved yet. Looks at every block's head; sets bad ones aside."""
-        return [block for block in self.blocks if not self._sound(block)]
+        """Blocks that are not solved yet. Reads every block; sets bad ones aside."""
+        return self.inspect()[0]
+
+    def inspect(self) -> tuple[list[int], list[str]]:
+        """Blocks that are not solved yet, and in words which files were set aside for it."""
+        missing, aside = [], []
+        for block in self.blocks:
+            path = self.path_of(block)
+            if not path.exists():
+                missing.append(block)
+                continue
+            try:
+                read_block(path, self._owner(block), ["frame"])
+            except BlockFault as fault:
+                missing.append(block)
+                aside.append(f"{path.name} was {fault} and is set aside as {set_aside(path).name}")
+        return missing, aside
 
     @property
     def rows_solved(self) -> int:
@@ -92,11 +109,25 @@ class Run:
 
     def write_block(self, block: int, rows: pd.DataFrame) -> None:
         """Put a solved block on disk, whole or not at all."""
+        write_block(self.path_of(block), rows, self._owner(block))
+
+    def read_block(self, block: int, columns: Sequence[str] | None = None) -> pd.DataFrame:
+        """Rows of a solved block.
+
+        Raises
+        ------
+        RunError
+            The block is damaged or of another run; it is set aside.
+        """
         path = self.path_of(block)
-        with naming(path):
-            scratch = path.with_name(f"{path.name}.part{os.getpid()}")
-            rows.to_parquet(scratch, index=False)
-            os.replace(scratch, path)
+        try:
+            return read_block(path, self._owner(block), columns)
+        except BlockFault as fault:
+            other = set_aside(path)
+            raise RunError(
+                f"{path}: {fault}; it is set aside as {other.name}, resume the sweep to solve its "
+                "frames again"
+            ) from None
 
     def unit_of(self, block: int) -> NDArray[np.float64]:
         """(rows, inputs) points in the unit cube of one block."""
@@ -106,35 +137,29 @@ class Run:
     def table(self, columns: Sequence[str] | None = None) -> pd.DataFrame:
         """All solved rows, in the order of the design.
 
-        columns : only these are read from disk; all when not given.
+        columns : only these are read; all when not given.
+
+        Raises
+        ------
+        RunError
+            No block is there, or one is not to be trusted and now set aside.
         """
         wanted = None if columns is None else list(dict.fromkeys(columns))
         parts = [
-            pd.read_parquet(self.path_of(block), columns=wanted)
-            for block in self.blocks
-            if self.path_of(block).exists() and self._sound(block)
+            self.read_block(block, wanted) for block in self.blocks if self.path_of(block).exists()
         ]
         if not parts:
             raise RunError(f"{self.folder}: no frame is solved yet; run or resume the sweep")
         return pd.concat(parts, ignore_index=True)
 
-    def _sound(self, block: int) -> bool:
-        path = self.path_of(block)
-        if not path.exists():
-            return False
-        import pyarrow.parquet as pq
+    @cached_property
+    def digest(self) -> str:
+        """What two runs share that are the same but for their sample counts."""
+        return digest(self.study, self.second_order)
 
-        expected = self.rows_of(block)
-        try:
-            with pq.ParquetFile(path) as file:
-                count = file.metadata.num_rows
-                first = file.read_row_group(0, columns=["frame"]).column(0)[0].as_py()
-            good = count == expected.stop - expected.start and first == expected.start
-        except Exception:
-            good = False
-        if not good:
-            set_aside(path)
-        return bool(good)
+    def _owner(self, block: int) -> str:
+        rows = self.rows_of(block)
+        return f"run {self.digest}, frames {rows.start} to {rows.stop - 1}"
 
     def clear_scratch(self) -> None:
         """Take away what killed processes had not finished writing; only while locked."""
@@ -178,7 +203,7 @@ def open_run(folder: str | Path) -> Run:
     if not isinstance(second_order, bool) or not isinstance(per_block, int) or per_block < 1:
         raise RunError(f"{facts_path}: incomplete; run the sweep into a new folder")
     run = Run(folder, study, second_order, per_block)
-    if facts.get("digest") != digest(study, run.second_order):
+    if facts.get("digest") != run.digest:
         raise RunError(
             f"{study_path}: changed since the run was made; restore it, or run the changed study "
             "into a new folder"
@@ -198,7 +223,7 @@ def prepare(study: Study, folder: str | Path, second_order: bool = True) -> Run:
     study.design(second_order)
     if (folder / "run.json").exists():
         run = open_run(folder)
-        if digest(study, second_order) != digest(run.study, run.second_order):
+        if digest(study, second_order) != run.digest:
             raise RunError(
                 f"{folder}: holds a run of another study; choose a new folder, or resume with the "
                 "study.toml in it"
@@ -207,11 +232,24 @@ def prepare(study: Study, folder: str | Path, second_order: bool = True) -> Run:
             with locked(folder):
                 return _write_head(replace(run, study=study))
         return run
-    if folder.exists() and any(folder.iterdir()):
-        raise RunError(f"{folder}: holds other files; choose a new or empty folder")
     with naming(folder):
+        if folder.exists() and not folder.is_dir():
+            raise RunError(f"{folder}: is a file; choose a new or empty folder")
+        if folder.exists() and not _hardly_begun(folder, study):
+            raise RunError(f"{folder}: holds other files; choose a new or empty folder")
         (folder / "blocks").mkdir(parents=True, exist_ok=True)
     return _write_head(Run(folder, study, second_order, _per_block(study, second_order)))
+
+
+def _hardly_begun(folder: Path, study: Study) -> bool:
+    """Whether a folder is empty, or holds no more than a process left that was killed here."""
+    for path in folder.iterdir():
+        empty = path.name == "blocks" and path.is_dir() and not any(path.iterdir())
+        unfinished = path.name.startswith(("study.toml.part", "run.json.part"))
+        own = path.name == "study.toml" and path.read_bytes() == write_study(study).encode()
+        if not (empty or unfinished or own):
+            return False
+    return True
 
 
 def _per_block(study: Study, second_order: bool) -> int:
@@ -226,7 +264,7 @@ def _write_head(run: Run) -> Run:
         _write_text(run.folder / "study.toml", write_study(run.study))
         facts = {
             "format": FORMAT,
-            "digest": digest(run.study, run.second_order),
+            "digest": run.digest,
             "seed": run.study.seed,
             "samples": run.study.samples,
             "second_order": run.second_order,

@@ -5,7 +5,6 @@ from __future__ import annotations
 import dataclasses
 
 import numpy as np
-import pandas as pd
 import pytest
 
 from model.errors import InputError
@@ -83,9 +82,9 @@ def changed(tmp_path):
         study = dataclasses.replace(read_study("orchard-truck"), samples=8)
         run = prepare(study, tmp_path / "run")
         carry_out(run)
-        table = pd.read_parquet(run.path_of(0))
+        table = run.table()
         table[column] = table[column].where(table["frame"] != 4, value)
-        table.to_parquet(run.path_of(0), index=False)
+        run.write_block(0, table)
         return run
 
     return change

@@ -107,7 +107,7 @@ def test_a_full_disk_is_named(
     def full(*_: object, **__: object) -> None:
         raise OSError(28, "No space left on device")
 
-    monkeypatch.setattr(pd.DataFrame, "to_parquet", full)
+    monkeypatch.setattr(Path, "write_bytes", full)
     with pytest.raises(runs.RunError, match=r"00000\.parquet: No space left on device; free"):
         jobs.carry_out(run)
     monkeypatch.undo()
