@@ -5,6 +5,8 @@ from __future__ import annotations
 import errno
 import os
 import sys
+import threading
+import time
 from collections.abc import Iterator
 from contextlib import contextmanager
 from pathlib import Path
@@ -16,29 +18,79 @@ class RunError(DesignError):
     """A run folder cannot be used; the message names the file and the remedy."""
 
 
+PATIENCE = 1.0
+"""Seconds after which a mark without a holder is taken for what a killed process left."""
+
+_held: set[Path] = set()
+_one_at_a_time = threading.Lock()
+
+
 @contextmanager
 def locked(folder: Path) -> Iterator[None]:
     """Hold a run folder for this process; a second one is told who has it."""
-    path = folder / "in-use"
-    mine = str(os.getpid())
+    key = folder.resolve()
+    with _one_at_a_time:
+        if key in _held:
+            raise _in_use(folder, os.getpid())
+        _held.add(key)
+    try:
+        path = _marked(folder)
+        try:
+            yield
+        finally:
+            path.unlink(missing_ok=True)
+    finally:
+        _held.discard(key)
+
+
+def _marked(folder: Path) -> Path:
+    """Mark a folder as this process's own."""
+    path, until = folder / "in-use", time.monotonic() + PATIENCE
     with naming(path):
         while True:
             try:
                 handle = os.open(path, os.O_CREAT | os.O_EXCL | os.O_WRONLY)
                 break
             except FileExistsError:
-                holder = path.read_text(encoding="utf-8").strip()
-                if holder and _alive(holder):
-                    raise RunError(
-                        f"{folder}: in use by process {holder}; wait for it or stop it"
-                    ) from None
-                _take_stale(path, holder)
-        os.write(handle, mine.encode())
-        os.close(handle)
+                holder = _holder(path)
+            if holder is None:
+                continue
+            if not holder and time.monotonic() < until:
+                time.sleep(0.02)  # about to say who it is
+                continue
+            if _alive(holder):
+                raise _in_use(folder, holder.split()[0])
+            _take_stale(path, holder)
+        try:
+            os.write(handle, _name(os.getpid()).encode())
+        finally:
+            os.close(handle)
+    return path
+
+
+def _in_use(folder: Path, process: int | str) -> RunError:
+    return RunError(f"{folder}: in use by process {process}; wait for it or stop it")
+
+
+def _holder(path: Path) -> str | None:
+    """What a mark says; None when it is gone meanwhile."""
     try:
-        yield
-    finally:
-        path.unlink(missing_ok=True)
+        return path.read_text(encoding="utf-8", errors="replace").strip()
+    except FileNotFoundError:
+        return None
+
+
+def _name(process: int) -> str:
+    """A process by its number and, where the system tells it, when it began.
+
+    Numbers are given out again, after a restart or in a container most likely of all.
+    """
+    try:
+        # the name in brackets may hold blanks; the time is the 22nd field, counted from 1
+        said = Path(f"/proc/{process}/stat").read_text(encoding="utf-8", errors="replace")
+        return f"{process} {said.rpartition(')')[2].split()[19]}"
+    except (OSError, IndexError):
+        return str(process)
 
 
 def _take_stale(path: Path, holder: str) -> None:
@@ -48,14 +100,18 @@ def _take_stale(path: Path, holder: str) -> None:
         os.replace(path, mine)
     except FileNotFoundError:
         return
-    if mine.read_text(encoding="utf-8").strip() != holder and not path.exists():
+    if _holder(mine) != holder and not path.exists():
         os.replace(mine, path)
     else:
         mine.unlink()
 
 
-def _alive(pid: str) -> bool:
-    if not pid.isdigit():
+def _alive(holder: str) -> bool:
+    """Whether the process of a mark still runs, and is another one than this."""
+    pid, _, began = holder.partition(" ")
+    if not (pid.isascii() and pid.isdigit()) or int(pid) == os.getpid():
+        return False
+    if began and _name(int(pid)) != holder:
         return False
     if sys.platform == "win32":  # there a signal of 0 would not only ask
         import ctypes
@@ -66,9 +122,9 @@ def _alive(pid: str) -> bool:
         return bool(handle)
     try:
         os.kill(int(pid), 0)
-    except ProcessLookupError:
+    except (ProcessLookupError, OverflowError):
         return False
-    except (PermissionError, OSError):
+    except OSError:
         return True
     return True
 
