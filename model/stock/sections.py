@@ -213,20 +213,21 @@ def section_values(shape: str, sizes: Sizes, poisson: float = 0.3) -> SectionVal
     Raises
     ------
     InputError
-        An unknown shape, a missing size, or an impossible one: the first bad entry, in mm.
+        An unknown shape, a size that is missing, not one of the shape's or impossible (the first
+        bad entry, in mm), or a Poisson's ratio that no isotropic material has.
     """
-    given = _checked(shape, sizes)
+    given = _checked(shape, sizes, poisson)
     return SHAPES[shape].function(*_of(shape, given), poisson, **_more(shape, given))
 
 
-def section_slopes(
-    shape: str, sizes: Mapping[str, float], poisson: float = 0.3
-) -> dict[str, SectionValues]:
+def section_slopes(shape: str, sizes: Sizes, poisson: float = 0.3) -> dict[str, SectionValues]:
     """Slope of every section value with each size, by the complex step (exact to rounding).
 
-    An optional size (``corner_radius``) stays as it is given and has no slope of its own.
+    By size: values per metre of it [m, m³], shaped as the sizes [m] broadcast together. An
+    optional size (``corner_radius``) stays as it is given and has no slope of its own. Checked
+    as ``section_values`` checks; the last bit may differ between one size and many.
     """
-    given = _checked(shape, sizes)
+    given = _checked(shape, sizes, poisson)
     names, more = SHAPES[shape].sizes, _more(shape, given)
     found = {}
     for name in names:
@@ -252,7 +253,7 @@ def _more(shape: str, given: Mapping[str, F64]) -> dict[str, F64]:
     return {name: given[name] for name in SHAPES[shape].optional}
 
 
-def _checked(shape: str, sizes: Sizes) -> dict[str, F64]:
+def _checked(shape: str, sizes: Sizes, poisson: float = 0.3) -> dict[str, F64]:
     """Every size of the shape as arrays of one shape, each possible."""
     if shape not in SHAPES:
         raise InputError("shape", repr(shape), f"use one of: {', '.join(SHAPES)}")
@@ -260,6 +261,12 @@ def _checked(shape: str, sizes: Sizes) -> dict[str, F64]:
     for name in about.sizes:
         if name not in sizes:
             raise InputError(name, "not given", f"a {shape} needs {', '.join(about.sizes)} in m")
+    for name in sizes:
+        if name not in about.sizes and name not in about.optional:
+            known = ", ".join((*about.sizes, *about.optional))
+            raise InputError(name, str(sizes[name]), f"leave it out: a {shape} has {known}")
+    if not -1 < poisson <= 0.5:
+        raise InputError("poisson", f"{poisson:g}", "stay above -1 and at most 0.5; metals: 0.3")
     every = {**about.optional, **{n: sizes[n] for n in sizes if n in about.optional}}
     every |= {name: sizes[name] for name in about.sizes}
     arrays = np.broadcast_arrays(*(np.asarray(v, dtype=np.float64) for v in every.values()))

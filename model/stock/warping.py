@@ -41,7 +41,7 @@ def held_warping_torsion(
 
     Parameters
     ----------
-    J, Iw : (...) torsion constant [m⁴], warping constant [m⁶]; 0 or more, not both 0.
+    J, Iw : (...) torsion constant [m⁴], warping constant [m⁶]; 0 or more, finite.
     E, G : (...) [Pa]. length : (...) [m] between the ends.
     spring : (...) bimoment each end takes per unit of warping, the same at both [N·m³]; 0 lets
         the ends warp (the answer is J), infinite holds them.
@@ -59,10 +59,13 @@ def held_warping_torsion(
     )
     for name, value in zip(names, arrays, strict=True):
         positive = name in ("E", "G", "length")
-        good = (value > 0) & (value < np.inf) if positive else value >= 0
+        good = value > 0 if positive else value >= 0
+        if name != "spring":
+            good = good & (value < np.inf)
         if not good.all():
             i = int(np.flatnonzero(~good)[0])
             remedy = "stay above 0, and finite" if positive else "use 0 or more"
+            remedy += ", and finite" if name in ("J", "Iw") else ""
             raise InputError(name, f"{value.flat[i]:g}", remedy)
     j, iw, e, g, span, c = arrays
     with np.errstate(divide="ignore", invalid="ignore", over="ignore"):

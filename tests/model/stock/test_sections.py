@@ -213,6 +213,45 @@ def test_slopes_are_what_central_differences_say(one):
             assert float(getattr(slope, name)) == pytest.approx(difference, rel=1e-7, abs=allowed)
 
 
+@given(SHAPES_AND_SIZES)
+def test_slopes_times_sizes_add_up_to_two_areas_and_four_second_moments(one):
+    """Euler's theorem: areas grow by squares of all sizes together, moments by fourth powers."""
+    shape, sizes = one
+    own, slopes = numbers(section_values(shape, sizes)), section_slopes(shape, sizes)
+    for name in VALUES:
+        total = sum(float(getattr(slope, name)) * sizes[size] for size, slope in slopes.items())
+        power = 2 if name.startswith("A") else 4
+        # slopes of a wall and of the outside take each other away when a wall is thin
+        assert total == pytest.approx(power * own[name], rel=1e-11)
+
+
+@pytest.mark.parametrize("shape", SHAPES)
+def test_slopes_of_many_sizes_are_the_slopes_of_each(shape):
+    """But for rounding: complex products of arrays may round otherwise than those of numbers."""
+    many = {name: value * np.array([[0.9], [1.0], [1.1]]) for name, value in SIZES[shape].items()}
+    together, own = section_slopes(shape, many), section_values(shape, SIZES[shape])
+    for k in range(3):
+        alone = section_slopes(shape, {name: float(value[k, 0]) for name, value in many.items()})
+        for size in SHAPES[shape].sizes:
+            for name in VALUES:
+                found = np.broadcast_to(getattr(together[size], name), (3, 1))
+                expected = float(getattr(alone[size], name))
+                allowed = 1e-13 * float(getattr(own, name)) / SIZES[shape][size]
+                assert found[k, 0] == pytest.approx(expected, rel=1e-13, abs=allowed)
+
+
+def test_slopes_of_a_round_tube_in_closed_form():
+    """A = π t (D - t), so dA/dD = π t and dA/dt = π (D - 2 t); dI/dD from I = π/64 (D⁴ - d⁴)."""
+    outside, wall = 0.0254, 0.0016
+    inner = outside - 2 * wall
+    slopes = section_slopes("round tube", {"outside": outside, "wall": wall})
+    assert float(slopes["outside"].A) == pytest.approx(np.pi * wall, rel=1e-13)
+    assert float(slopes["wall"].A) == pytest.approx(np.pi * inner, rel=1e-13)
+    grown = np.pi / 16 * (outside**3 - inner**3)
+    assert float(slopes["outside"].Iy) == pytest.approx(grown, rel=1e-13)
+    assert float(slopes["wall"].J) == pytest.approx(np.pi / 4 * inner**3, rel=1e-13)
+
+
 def test_slopes_of_a_tube_with_round_corners_keep_the_radius():
     sizes = {"width": 0.05, "depth": 0.1, "wall": 0.003, "corner_radius": 0.006}
     slopes = section_slopes("rectangular tube", sizes)
@@ -292,6 +331,21 @@ def test_a_corner_radius_past_the_middle_is_refused(bad):
     fault = refused("square tube", {"outside": 0.04, "wall": 0.003, "corner_radius": bad})
     assert fault.field == "corner_radius"
     assert fault.remedy == "stay between 0 and 20 mm"
+
+
+def test_a_size_that_the_shape_does_not_have_is_refused():
+    """A corner radius on a round tube would else be forgotten without a word."""
+    fault = refused("round tube", {**SIZES["round tube"], "corner_radius": 0.003})
+    assert str(fault) == "corner_radius = 0.003: leave it out: a round tube has outside, wall"
+    fault = refused("square tube", {**SIZES["square tube"], "width": 0.04})
+    assert fault.remedy.endswith("has outside, wall, corner_radius")
+
+
+@pytest.mark.parametrize("bad", [float("nan"), float("inf"), -1.0, 0.51])
+def test_a_ratio_of_poisson_that_cannot_be_is_refused(bad):
+    for ask in (section_values, section_slopes):
+        with pytest.raises(InputError, match="poisson"):
+            ask("round tube", SIZES["round tube"], bad)
 
 
 def test_unknown_shapes_and_missing_sizes_are_refused():

@@ -122,7 +122,18 @@ def test_stiffer_ends_never_twist_more_and_lie_between_free_and_held(length, exp
 
 @pytest.mark.parametrize(
     "name, bad",
-    [("J", -1e-9), ("Iw", np.nan), ("E", 0.0), ("G", np.inf), ("length", 0.0), ("spring", -1.0)],
+    [
+        ("J", -1e-9),
+        ("J", np.inf),
+        ("Iw", np.nan),
+        ("Iw", np.inf),
+        ("E", 0.0),
+        ("G", np.inf),
+        ("length", 0.0),
+        ("length", np.inf),
+        ("spring", -1.0),
+        ("spring", np.nan),
+    ],
 )
 def test_what_cannot_be_is_refused_by_name(name, bad):
     given_values = {"J": 4e-9, "Iw": 3e-10, "E": E, "G": G, "length": 1.0, "spring": 10.0}
