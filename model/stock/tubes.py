@@ -118,10 +118,10 @@ def parse_stock(name: str, text: str) -> StockList:
     """
     facts: dict[str, str] = {}
     lines = text.removeprefix("\ufeff").splitlines()
-    body = [(n, line) for n, line in enumerate(lines, 1) if line.strip() and line[0] != "#"]
-    for line in lines:
-        if line.startswith("#") and ":" in line:
-            key, value = line[1:].split(":", 1)
+    body = [(n, line) for n, line in enumerate(lines, 1) if line.strip()[:1] not in ("", "#")]
+    for line in lines[: body[0][0]] if body else lines:
+        if line.strip().startswith("#") and ":" in line:
+            key, value = line.strip()[1:].split(":", 1)
             facts[key.strip()] = value.strip()
     shape, unit = facts.get("shape", ""), facts.get("unit", "")
     if shape not in SHAPES:
@@ -130,12 +130,12 @@ def parse_stock(name: str, text: str) -> StockList:
         raise InputError(f"{name}: unit", repr(unit), "use mm or in")
     if not body:
         raise InputError(name, "no sizes", f"give a header line: {','.join(SHAPES[shape].sizes)}")
-    header = [h.strip() for h in next(csv.reader([body[0][1]]))]
+    header = _cells(name, *body[0])
     if sorted(header) != sorted(SHAPES[shape].sizes):
         raise InputError(
             f"{name} line {body[0][0]}", ",".join(header), f"use {','.join(SHAPES[shape].sizes)}"
         )
-    sizes = [_size(name, shape, _METRES[unit], header, number, line) for number, line in body[1:]]
+    sizes = [_size(name, shape, unit, header, number, line) for number, line in body[1:]]
     if not sizes:
         raise InputError(name, "no sizes", "give at least one size below the header line")
     seen: dict[str, int] = {}
@@ -149,22 +149,30 @@ def parse_stock(name: str, text: str) -> StockList:
     return StockList(name, facts.get("name", name), shape, unit, standard, tuple(sizes))
 
 
-def _size(
-    name: str, shape: str, scale: float, header: list[str], number: int, line: str
-) -> StockSize:
-    cells = [c.strip() for c in next(csv.reader([line]))]
+def _cells(name: str, number: int, line: str) -> list[str]:
+    try:
+        return [cell.strip() for cell in next(csv.reader([line]))]
+    except csv.Error as fault:
+        raise InputError(f"{name} line {number}", f"{line[:20]}...", str(fault)) from None
+
+
+def _size(name: str, shape: str, unit: str, header: list[str], number: int, line: str) -> StockSize:
+    cells = _cells(name, number, line)
     if len(cells) != len(header):
         raise InputError(f"{name} line {number}", line, f"give {len(header)} values")
     values = {}
     for column, cell in zip(header, cells, strict=True):
         try:
-            values[column] = float(cell)
+            values[column] = float(cell if "_" not in cell else "")
         except ValueError:
             raise InputError(f"{name} line {number}, {column}", cell, "give a number") from None
     try:
-        sizes = {n: values[n] * scale for n in SHAPES[shape].sizes}
-        section_values(shape, sizes)
+        # as if the list's unit were mm: what fits does not depend on it, and remedies read right
+        section_values(shape, {n: values[n] / 1e3 for n in SHAPES[shape].sizes})
     except InputError as fault:
-        raise InputError(f"{name} line {number}, {fault.field}", line, fault.remedy) from None
+        given = cells[header.index(fault.field)]
+        remedy = fault.remedy.replace(" mm", f" {unit}")
+        raise InputError(f"{name} line {number}, {fault.field}", given, remedy) from None
+    sizes = {n: values[n] * _METRES[unit] for n in SHAPES[shape].sizes}
     label = " x ".join(f"{values[n]:g}" for n in SHAPES[shape].sizes)
     return StockSize(label, shape, sizes, name)

@@ -42,6 +42,21 @@ def test_inches_are_read_as_inches_and_columns_in_any_order():
     assert size.sizes == pytest.approx({"outside": 0.0254, "wall": 0.065 * 0.0254}, rel=1e-15)
 
 
+def test_remarks_may_stand_anywhere_and_further_in():
+    text = GOOD.replace("20,2\n", "  # not in stock: 19 x 2\n\n20,2\n# unit: as drawn\n")
+    found = parse_stock("mine", text)
+    assert found.sizes == LIST.sizes
+    assert found.unit == "mm"
+
+
+def test_faults_of_an_inch_list_speak_of_inches():
+    text = "# shape: round tube\n# unit: in\noutside,wall\n1,0.6\n"
+    with pytest.raises(InputError) as caught:
+        parse_stock("mine", text)
+    said = "mine line 4, wall = 0.6: keep it at most half the outside size, 0.5 in"
+    assert str(caught.value) == said
+
+
 def test_an_unknown_label_is_answered_with_the_labels():
     with pytest.raises(InputError, match=r"20 x 1.5, 25 x 1.5"):
         parse_stock("mine", GOOD).size("21 x 1")
@@ -59,6 +74,9 @@ def test_an_unknown_label_is_answered_with_the_labels():
         ("25,1.5", "25,-1", "mine line 8, wall", "above 0"),
         ("25,1.5", "nan,1", "mine line 8, outside", "above 0"),
         ("25,1.5", "25,13", "mine line 8, wall", "12.5 mm"),
+        ("25,1.5", "25,13", "mine line 8, wall", "13: keep it"),
+        ("25,1.5", "2_5,1.5", "mine line 8, outside", "2_5: give a number"),
+        ("25,1.5", "25," + "1" * 200_000, "mine line 8", "field limit"),
         ("25,1.5", "20,2.0", "mine line 8", "line 6 already"),
     ],
 )
@@ -135,6 +153,27 @@ def test_rounding_up_never_makes_a_tube_smaller_and_nearest_is_never_the_worse_f
 
 
 # --- the lists that come with the program ---------------------------------------------------
+
+
+def test_pipe_sizes_are_found_for_wishes_between_them():
+    """Area of 33.7 x 2 is π 31.7 x 2 = 199.18 mm², of 32.4 x 1.9 π 30.5 x 1.9 = 182.05 mm²."""
+    size, said = next_size(catalogue().stock["metric-pipe"], {"outside": 0.0324, "wall": 0.0019})
+    assert size.label == "33.7 x 2"
+    assert said.endswith("mass per metre +9.4 %")
+
+
+@pytest.mark.parametrize("name", ["metric-square", "metric-rectangular", "inch-square"])
+def test_lists_of_square_corners_say_how_far_real_corners_are_off(name):
+    """The standard's line says 3 % less area, 5 % less I, 3 % more J, for a side of 20 walls."""
+    assert "3 % less area, 5 % less second moment and 3 % more torsion constant" in (
+        catalogue().stock[name].standard
+    )
+    sizes = {"outside": 0.04, "wall": 0.002}
+    sharp = section_values("square tube", sizes)
+    real = section_values("square tube", {**sizes, "corner_radius": 0.004})
+    for value, percent in (("A", -3), ("Iy", -5), ("J", 3)):
+        off = float(getattr(real, value) / getattr(sharp, value) - 1)
+        assert off == pytest.approx(percent / 100, abs=0.005)
 
 
 def test_every_list_of_the_presets_can_be_read_and_names_its_standard():
