@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 import pandas as pd
@@ -77,11 +77,11 @@ def drivers(
     sound = results[whole]
     used = int(whole.sum())
     if used < 8:
-        raise RunError(f"{run.folder}: only {used} base samples have no failed frame; "
-                       "narrow the ranges")  # fmt: skip
+        remedy = "narrow the ranges" if used < len(whole) else "sweep with more samples"
+        raise RunError(f"{run.folder}: only {used} base samples have no failed frame; {remedy}")
     if np.ptp(sound) <= 1e-12 * np.abs(sound).max():
         raise InputError("output", output, "it is the same for every frame: nothing drives it")
-    found = indices(sound, design.judged, run.second_order)
+    found = _steady(indices(sound, design.judged, run.second_order), sound, run.second_order)
     dropped = len(whole) - used
     could = bounds(results, design.judged, run.second_order) if dropped else None
     labels = [group.name for group in judged]
@@ -113,6 +113,16 @@ def drivers(
         tuple(np.flatnonzero(~whole).tolist()),
         failed,
     )
+
+
+def _steady(found: Indices, results: F64, second_order: bool) -> Indices:
+    """The same, with no more places called settled than half of the samples rank alike."""
+    first = results[: len(results) // 2]
+    if np.ptp(first) == 0:
+        return replace(found, settled=0)
+    half = indices(first, len(found.order), second_order, 2)
+    alike = np.append(half.order == found.order, False)
+    return replace(found, settled=min(found.settled, int(np.argmin(alike))))
 
 
 def verdict(
@@ -176,7 +186,9 @@ def sentence(found: Indices, labels: list[str], output: str) -> str:
     """The strongest input in one sentence."""
     best = int(np.argmax(found.first))
     share, interval = float(found.first[best]), float(found.first_interval[best])
-    low, high = max(0.0, share - interval), min(1.0, share + interval)
+    low, share, high = (
+        min(1.0, max(0.0, end)) for end in (share - interval, share, share + interval)
+    )
     text = (
         f"{labels[best]} explains {share:.0%} of the variation in {OUTPUTS[output].label} "
         f"({low:.0%} to {high:.0%})."

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from bisect import bisect_right
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
@@ -28,8 +29,9 @@ def unbeaten(costs: F64) -> NDArray[np.int64]:
 
     Notes
     -----
-    Two columns by one sort, n log n; more columns by a sweep over the sorted rows against the
-    unbeaten ones so far.
+    Two columns by one sort; three by going through the sorted rows along the stairs that the
+    last two columns make of the unbeaten ones (H. T. Kung, F. Luccio & F. P. Preparata, Journal of
+    the ACM 22, 1975): n log n both. More columns against all unbeaten rows so far.
     """
     sound = np.flatnonzero(np.isfinite(costs).all(axis=1))
     kept = costs[sound]
@@ -42,6 +44,9 @@ def unbeaten(costs: F64) -> NDArray[np.int64]:
         first = np.concatenate([[True], ranked[1:, 1] < best[:-1]])
         kept_rows: NDArray[np.int64] = sound[order[first]]
         return kept_rows
+    if ranked.shape[1] == 3:
+        steps: NDArray[np.int64] = sound[order[_along_stairs(ranked)]]
+        return steps
     front = np.empty_like(ranked)
     members: list[int] = []
     for k, row in enumerate(ranked):
@@ -51,6 +56,29 @@ def unbeaten(costs: F64) -> NDArray[np.int64]:
             members.append(k)
     found: NDArray[np.int64] = sound[order[members]]
     return found
+
+
+def _along_stairs(ranked: F64) -> list[int]:
+    """Unbeaten rows of three columns in ascending order.
+
+    A row is beaten where the stairs (second column ascending, third descending) of the rows
+    before it lie below it; otherwise it becomes a step and those that it undercuts go.
+    """
+    members: list[int] = []
+    seconds: list[float] = []
+    thirds: list[float] = []
+    for k, (second, third) in enumerate(ranked[:, 1:].tolist()):
+        place = bisect_right(seconds, second)
+        if place and thirds[place - 1] <= third:
+            continue
+        members.append(k)
+        begin = place - 1 if place and seconds[place - 1] == second else place
+        end = begin
+        while end < len(thirds) and thirds[end] >= third:
+            end += 1
+        seconds[begin:end] = [second]
+        thirds[begin:end] = [third]
+    return members
 
 
 @dataclass(frozen=True, eq=False)

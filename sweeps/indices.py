@@ -117,12 +117,12 @@ def _square(pairs: F64, inputs: int) -> F64:
 
 
 def _settled(total: F64, totals: F64) -> int:
-    """Leading places whose order the bootstrap does not question; ``totals`` is ranked alike."""
+    """Leading places that the bootstrap grants to no later one; ``totals`` is ranked alike."""
     for place in range(len(total) - 1):
         if total[place] < LITTLE:
             return place
-        gap = totals[:, place] - totals[:, place + 1]
-        if np.quantile(gap, 0.025) <= 0:
+        gap = totals[:, place, None] - totals[:, place + 1 :]
+        if (np.quantile(gap, 0.025, axis=0) <= 0).any():
             return place
     return len(total)
 

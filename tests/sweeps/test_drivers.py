@@ -7,6 +7,7 @@ sampling error allows 0.01.
 
 import json
 from collections.abc import Callable
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -14,7 +15,8 @@ import pytest
 from SALib.analyze import sobol
 
 from model.errors import InputError
-from sweeps.drivers import drivers, indices, response, sentence, verdict
+from sweeps.drivers import _steady, drivers, indices, response, sentence, verdict
+from sweeps.indices import _settled
 from sweeps.runs import Run, RunError
 from sweeps.sampling import Design
 
@@ -93,6 +95,34 @@ def test_a_few_samples_are_not_called_settled() -> None:
     found = indices(flat, 3, True)
     assert found.settled == 0
     assert "add samples" in verdict(found, 16, 0)
+
+
+def test_a_place_is_settled_only_against_every_later_one() -> None:
+    """The second's interval is narrow and below the first's; the third's reaches over both."""
+    random = np.random.default_rng(1)
+    total = np.array([0.5, 0.45, 0.44])
+    totals = total + random.normal(size=(2000, 3)) * np.array([0.005, 0.005, 0.1])
+    assert _settled(total, totals) == 0
+    assert _settled(total[:2], totals[:, :2]) == 2
+
+
+def test_what_half_of_the_samples_rank_otherwise_is_not_called_settled() -> None:
+    """One half of the samples of a sum led by A, the other of one led by B more strongly."""
+    unit = Design(2, 512).unit().reshape(512, -1, 2)
+    values = unit @ np.array([1.0, 0.2])
+    values[256:] = unit[256:] @ np.array([0.1, 3.0])
+    found = indices(values, 2, True)
+    assert found.order.tolist() == [1, 0]
+    assert found.settled > 0
+    assert _steady(found, values, True).settled == 0
+    values[:256] = 1.0
+    assert _steady(indices(values, 2, True), values, True).settled == 0
+
+
+def test_too_few_samples_are_not_blamed_on_failed_frames(small_run: Run) -> None:
+    run = replace(small_run, study=replace(small_run.study, samples=4))
+    with pytest.raises(RunError, match="sweep with more samples"):
+        drivers(run, table=small_run.table().iloc[: run.design.rows])
 
 
 def test_the_sentence_names_share_and_interval() -> None:

@@ -42,6 +42,17 @@ def test_unbeaten_rows_equal_brute_force(rows: list[tuple[float, ...]]) -> None:
     assert set(unbeaten(costs).tolist()) == by_brute_force(costs)
 
 
+@pytest.mark.parametrize("columns", [2, 3, 4])
+@pytest.mark.parametrize("levels", [8, 10**9])
+def test_many_rows_equal_brute_force(columns: int, levels: int) -> None:
+    """Few levels make ties in every column."""
+    rng = np.random.default_rng(columns)
+    costs = np.abs(rng.normal(size=(1500, columns)))
+    costs /= np.linalg.norm(costs, axis=1)[:, None]  # a front that bulges: many rows stay
+    costs = np.round(costs * (1 + 0.1 * rng.random((1500, 1))) * levels)
+    assert set(unbeaten(costs).tolist()) == by_brute_force(costs)
+
+
 def hypervolume(costs: np.ndarray, reference: float) -> float:
     """Area that a front of two columns dominates."""
     points = costs[unbeaten(costs)]
