@@ -85,7 +85,7 @@ def test_the_wheel_says_what_it_is(wheel):
     assert told["License-Expression"] == "MIT"
     assert told["Requires-Python"] == ">=3.11"
     assert told["Description-Content-Type"] == "text/markdown"
-    assert not told.get_all("Provides-Extra")
+    assert told.get_all("Provides-Extra") == ["cluster"]  # the only optional one
 
 
 def test_an_installed_copy_runs_from_any_folder_and_makes_no_environment(installed, tmp_path):
