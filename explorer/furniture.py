@@ -5,6 +5,7 @@ from __future__ import annotations
 import datetime
 from collections.abc import Iterator
 from contextlib import contextmanager
+from pathlib import Path
 from typing import Any
 
 import altair as alt
@@ -27,19 +28,7 @@ PAGES = {
 }
 """The pages in the order of the work: name of the file, and what a person reads."""
 
-_STYLE = """<style>
-[data-testid="stMainBlockContainer"] {padding: 2.6rem 2.4rem 3rem; max-width: 1720px}
-[data-testid="stMainBlockContainer"] h1 {font-size: 2rem; padding: 0 0 0.2rem}
-[data-testid="stMainBlockContainer"] h3 {font-size: 1.3rem}
-[data-testid="stMetric"] {padding: 0.5rem 0.9rem}
-[data-testid="stButtonGroup"] button {padding-left: 0.65rem; padding-right: 0.65rem}
-@media (max-width: 640px) {[data-testid="stMainBlockContainer"] {padding: 3.2rem 1rem 3rem}}
-</style>"""
-_DARK_STYLE = f"""<style>
-[data-testid="stBaseButton-primary"], [data-testid="stBaseButton-primary"] * {{
-  color: {theme.DARK.background}
-}}
-</style>"""
+_STYLE = (Path(__file__).parent / "assets" / "pages.css").read_text(encoding="utf-8")
 
 
 def dark() -> bool:
@@ -47,9 +36,16 @@ def dark() -> bool:
     return page_is_dark()
 
 
+def _style() -> str:
+    look = theme.colours(dark())
+    better = max((look.background, look.ink), key=lambda c: theme.contrast(c, look.accent))
+    colours = f"--frame-ink: {look.ink}; --frame-muted: {look.muted}; --frame-on-accent: {better};"
+    return f"<style>:root {{{colours}}}\n{_STYLE}</style>"
+
+
 def opening(title: str, sentence: str) -> None:
     """The head of a page: its name, and how things stand in one sentence."""
-    st.html(_STYLE + _DARK_STYLE if dark() else _STYLE)
+    st.html(_style())
     st.title(title, anchor=False)
     st.markdown(sentence)
     here = state.bench()

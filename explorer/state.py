@@ -202,7 +202,7 @@ def pick(frame: int | None) -> None:
 def keep_beside(frames: Iterable[int]) -> None:
     """Keep these frames to compare the candidate with."""
     here = bench()
-    here.beside = tuple(dict.fromkeys(frames))[-address.MOST_BESIDE:]
+    here.beside = tuple(dict.fromkeys(frames))[-address.MOST_BESIDE :]
     _write_address(here)
 
 
