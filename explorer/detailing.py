@@ -259,9 +259,10 @@ def inputs_table(run: Run, frame: int, units: Units) -> pd.DataFrame:
     start = starting_values(run.study)
     return pd.DataFrame(
         {
-            "Input": [words.titled_input(given, units) for given in run.study.inputs],
+            "Input": [given.label for given in run.study.inputs],
+            "Unit": [units.unit("length") if g.unit == "mm" else "" for g in run.study.inputs],
             "This frame": [words.input_value(g, row[g.path], units) for g in run.study.inputs],
-            "Started from": [
+            "Start": [
                 words.input_value(g, start[g.path], units) or "own size" for g in run.study.inputs
             ],
         }
@@ -269,9 +270,10 @@ def inputs_table(run: Run, frame: int, units: Units) -> pd.DataFrame:
 
 
 INPUT_COLUMNS = {
-    "Input": st.column_config.TextColumn(width=245),
-    "This frame": st.column_config.TextColumn(width=85, alignment="right"),
-    "Started from": st.column_config.TextColumn(width=90, alignment="right"),
+    "Input": st.column_config.TextColumn(width=195),
+    "Unit": st.column_config.TextColumn(width=42),
+    "This frame": st.column_config.TextColumn(width=78, alignment="right"),
+    "Start": st.column_config.TextColumn(width=68, alignment="right"),
 }
 """How the columns of ``inputs_table`` are shown."""
 

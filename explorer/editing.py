@@ -8,11 +8,13 @@ from dataclasses import replace
 from typing import Any
 
 from model.errors import InputError
-from model.frame.layout import Layout, Mass, with_tube
+from model.frame.layout import Layout, Mass, with_station, with_tube
+from model.frame.vocabulary import FALLBACK, GROUPS
 from model.stock.sections import SHAPES, section_values
 from model.stock.tubes import StockList, StockSize
 from sweeps.study import with_value
 
+_RING_MEMBERS = ("bottom", "top", "uprights")
 _OF_VEHICLE = ("front_mount", "rear_mount", "entry")
 
 
@@ -20,7 +22,8 @@ def edited(layout: Layout, path: str, value: Any) -> Layout:
     """The layout with one field set.
 
     path : as in the study file, and besides ``front_mount``, ``rear_mount``, ``entry``,
-        ``masses`` (all pieces of equipment at once) and ``tube.GROUP.shape``.
+        ``masses`` (all pieces of equipment at once), ``station.NAME`` (the members that its ring
+        has), ``tube.GROUP`` (whether the group has a tube of its own) and ``tube.GROUP.shape``.
     value : in the path's unit, or the option itself.
 
     Raises
@@ -34,6 +37,11 @@ def edited(layout: Layout, path: str, value: Any) -> Layout:
         return replace(layout, **{path: value})
     if path == "masses":
         return replace(layout, masses=tuple(value))
+    if path.startswith("station.") and path.count(".") == 1:
+        there = {name: name in value for name in _RING_MEMBERS}
+        return with_station(layout, path.removeprefix("station."), **there)
+    if path.startswith("tube.") and path.count(".") == 1:
+        return _with_own_tube(layout, path.removeprefix("tube."), own=bool(value))
     group = path.removeprefix("tube.").removesuffix(".shape")
     if path == f"tube.{group}.shape":
         return _with_shape(layout, group, value)
@@ -51,6 +59,27 @@ def equipment(rows: Sequence[Mapping[str, Any]]) -> tuple[Mass, ...]:
         x, y, z = (float(row.get(f"{axis}_mm") or 0.0) / 1e3 for axis in "xyz")
         found.append(Mass(name, kg, x, y, z))
     return tuple(found)
+
+
+def without_own_tube(layout: Layout) -> list[str]:
+    """Groups that could be given a tube of their own."""
+    known = dict.fromkeys((*GROUPS, *FALLBACK.values()))
+    return [group for group in known if group not in layout.tubes]
+
+
+def _with_own_tube(layout: Layout, group: str, *, own: bool) -> Layout:
+    """A group given a tube of its own, at first the one it shared; or made to share again."""
+    tubes = dict(layout.tubes)
+    if not own:
+        del tubes[group]
+        shared = replace(layout, tubes=tubes)
+        shared.tube_group(group)  # refused where there is none to share
+        return shared
+    shared_by = group
+    while shared_by not in tubes and shared_by in FALLBACK:
+        shared_by = FALLBACK[shared_by]
+    tubes[group] = tubes.get(shared_by) or next(iter(tubes.values()))
+    return replace(layout, tubes=tubes)
 
 
 def nearest(stock: StockList, shape: str, sizes: Mapping[str, float]) -> StockSize:

@@ -85,6 +85,41 @@ def choice(
     )
 
 
+def switch(path: str, label: str, value: bool) -> None:
+    """Yes or no."""
+    key = _key(path)
+    st.toggle(
+        label,
+        value=value,
+        key=key,
+        on_change=lambda: state.set_field(path, bool(st.session_state[key])),
+    )
+
+
+def several(path: str, label: str, options: Sequence[str], value: Sequence[str]) -> None:
+    """Any of several at once."""
+    key = _key(path)
+    st.pills(
+        label,
+        options,
+        selection_mode="multi",
+        default=value,
+        key=key,
+        on_change=lambda: state.set_field(path, tuple(st.session_state[key])),
+    )
+
+
+def field(found: Field) -> None:
+    """A number, count or bracing, by the words of the thing it belongs to."""
+    label, quantity = label_of(found), "length" if found.unit == "mm" else "none"
+    if found.kind == "number":
+        number(found.path, label, found.value, quantity)
+    elif found.kind == "count":
+        whole(found.path, label, found.value)
+    else:
+        bracing(found, label)
+
+
 def bracing(field: Field, label: str) -> None:
     """How a face or ring is braced; only what it can have is offered."""
     name = field.path.rsplit(".", 1)[1]

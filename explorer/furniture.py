@@ -210,9 +210,9 @@ def _files() -> None:
 def _open(data: bytes) -> None:
     try:
         state.open_text(data.decode("utf-8"))
-    except UnicodeDecodeError:
-        problem(InputError("study file", "not text", "choose a TOML file in UTF-8"))
     except DesignError as fault:
         problem(fault)
+    except (ValueError, RecursionError):  # no text, or numbers and nesting without end
+        problem(InputError("study file", "not readable", "choose a TOML file in UTF-8"))
     else:
         st.rerun()

@@ -49,6 +49,7 @@ def key_numbers(detail: Detail, before: Detail | None, units: Units) -> None:
         if number(value) != number(then):
             places = 0 if share else decimals(units.shown(value, quantity))
             change = f"{units.shown(value - then, quantity):+,.{places}f}"
+            change = change if change.strip("+-0.,") else None
         row.metric(
             label if share else units.titled(label, quantity),
             percent(value) if share else number(units.shown(value, quantity)),

@@ -10,8 +10,10 @@ import streamlit as st
 
 from explorer import furniture, results, state, words
 from explorer.numbers import count
+from explorer.units import METRIC
 from explorer.varying_form import guarded
 from sweeps import jobs
+from sweeps.failures import failures
 from sweeps.runs import Run, RunError, digest, prepare
 from sweeps.study import Study
 
@@ -35,11 +37,16 @@ def start(study: Study, run: Run | None) -> None:
         except RunError:  # too few samples to build on: a new sweep is as quick
             begun = None
     if begun is None:
-        now = datetime.datetime.now()
-        name = f"{words.file_name(study.name)}-{now:%Y%m%d-%H%M%S}"
-        begun = prepare(study, state.run_folder(name))
+        begun = prepare(study, state.run_folder(_new_name(study)))
     jobs.start(begun)
     state.use_run(begun.name)
+
+
+def _new_name(study: Study) -> str:
+    """A name for a new run that no folder has yet."""
+    stem = f"{words.file_name(study.name)}-{datetime.datetime.now():%Y%m%d-%H%M%S}"
+    names = (stem, *(f"{stem}-{number}" for number in range(2, 1000)))
+    return next(name for name in names if not state.run_folder(name).exists())
 
 
 def resume(run: Run) -> None:
@@ -74,6 +81,17 @@ def watch(run: Run) -> None:
                 st.caption("What is solved stays. You may close the page: the sweep goes on.")
 
     look()
+
+
+def failed_frames(run: Run) -> None:
+    """The frames without a result, what they were and why."""
+    found = failures(results.table(run))
+    if len(found):
+        with st.expander(f"Frames without a result ({len(found):,})"):
+            heads = {given.path: words.titled_input(given, METRIC) for given in run.study.inputs}
+            shown = found.rename(columns={"frame": "Frame", "reason": "Why", **heads})
+            order = ["Frame", "Why", *(head for head in shown if head not in ("Frame", "Why"))]
+            st.dataframe(shown[order], hide_index=True, width="stretch", height=280)
 
 
 def earlier() -> None:
@@ -163,12 +181,17 @@ def run_panel(study: Study, run: Run | None, busy: bool, same: bool) -> None:
     if not study.inputs:
         st.warning("Nothing varies yet: tick an input, or add one.")
         return
+    ahead = st.empty()  # filled last: trying a few frames takes a moment
+    _run_buttons(study, run, same, busy)
     with furniture.telling():
-        ahead = results.trial(study)
-    st.markdown(extent(study, ahead))
-    note = refused_ahead(ahead)
-    if note:
-        st.caption(note)
+        found = results.trial(study)
+    with ahead.container():
+        st.markdown(extent(study, found))
+        if refused_ahead(found):
+            st.caption(refused_ahead(found))
+
+
+def _run_buttons(study: Study, run: Run | None, same: bool, busy: bool) -> None:
     if busy:
         return
     label, icon = _what_next(study, run, same)

@@ -48,6 +48,8 @@ with what:
     varying_form.choices(study)
     varying_form.add_input(study)
 
+if failed and run is not None:
+    sweeping.failed_frames(run)
 sweeping.earlier()
 if ready:
     furniture.next_step("drivers", "See what drives it",

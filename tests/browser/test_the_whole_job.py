@@ -240,6 +240,16 @@ def test_back_and_forward_go_through_the_work(page: Page, small_sweep: str):
     page.get_by_text(re.compile("explains .* of the variation")).first.wait_for()
 
 
+def test_a_member_picked_in_the_view_opens_its_tube(page: Page, workbench: str):
+    opened(page, workbench)
+    view = page.locator("canvas[role=application]")
+    view.focus()
+    for key in ("n", "n", "Enter"):
+        view.press(key)
+    page.get_by_label("From the list").wait_for()
+    assert page.get_by_role("radio", name="Tubes").get_attribute("aria-checked") == "true"
+
+
 HOSTILE = '![seen](http://example.org/seen.png) <img src="http://example.org/x.png">'
 
 

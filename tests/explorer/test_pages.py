@@ -215,6 +215,26 @@ def test_a_stock_list_gives_the_nearest_size_and_then_others(open_page):
     assert field(at, "Stiffness of an end [N·m/rad]").value == 50000
 
 
+def test_what_a_ring_has_and_what_stays_open_is_set(open_page):
+    at = go(open_page(), "Stations")
+    go(at, "dash")
+    members = next(g for g in at.button_group if "uprights" in g.options)
+    sound(members.set_value(["bottom", "uprights"]).run())
+    field(at, "Width over outriggers, 0 for none [mm]").set_value(1200).run()
+    assert "outriggers" in sound(at).error[0].value  # no tube for them yet
+    field(go(at, "Tubes"), "Give another group its own tube").set_value("outriggers").run()
+    assert not sound(at).error
+    go(at, "Bracing")
+    go(at, "engine bay")
+    field(at, "Top bracing").set_value("open").run()
+    sound(next(g for g in at.button_group if "floor" in g.options).set_value(["top"]).run())
+    layout = parse_study(drafts.read(address(at)["study"]) or "").layout
+    assert not layout.station("dash").top
+    assert layout.station("dash").outrigger == 1.2
+    assert layout.span("engine bay").clear == ("top",)
+    assert layout.tubes["outriggers"] == layout.tubes["lower rails"]
+
+
 def test_a_frame_that_does_not_hold_together_is_drawn_with_the_joint_named(open_page):
     at = go(open_page(study="orchard-truck"), "Tubes")
     groups = next(g for g in at.button_group if "lower rails" in g.options)
